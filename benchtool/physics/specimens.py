@@ -1,0 +1,290 @@
+"""Specimens: many boards of one shape as arrays, so that all of them are solved in one pass.
+
+A specimen is what really stands on the bench: its parts within (or, with a fault, outside) their tolerances and the mains it
+is fed from. Per-board arrays have the shape (n,), per-rail arrays (rails, n), per-load arrays (loads, n). A part that is not
+there conducts nothing: infinite resistance or zener voltage, zero capacitance; a series part that is not there has 0 ohm.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass, fields, replace
+from enum import IntEnum
+
+import numpy as np
+
+from benchtool.board import Board, Load, Maybe, Rail, Unknown, resistance_of
+from benchtool.physics import constants as known
+from benchtool.physics.laws import Array
+from benchtool.physics.sequence import points
+from benchtool.physics.shape import Shape, shape_of
+
+
+class Junction(IntEnum):
+    """State of the rectifier. In a bridge only SERIES_OPEN and SERIES_SHORT are used: all four junctions are alike."""
+
+    GOOD = 0
+    SERIES_OPEN = 1
+    SERIES_SHORT = 2
+    RETURN_OPEN = 3
+    RETURN_SHORT = 4
+
+
+class Switch(IntEnum):
+    """State of the transistor that switches a load."""
+
+    GOOD = 0
+    OPEN = 1
+    STUCK = 2
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Specimens:
+    """Boards of one `shape`; see the module for the arrays' shapes. Units: volts, amperes, ohms, farads, kelvin per watt."""
+
+    shape: Shape
+    frequency: float
+    mains: Array
+    crest: Array
+    fuse: Array
+    varistor: Array
+    joint: Array
+    inrush: Array
+    capacitance: Array
+    dropper_resistance: Array
+    dropper_short: Array
+    bleeder: Array
+    junction: Array
+    zener: Array
+    zener_short: Array
+    zener_kelvin_per_watt: Array
+    reservoir: Array
+    esr: Array
+    reservoir_leak: Array
+    board_leak: Array
+    feed: Array
+    load_resistance: Array
+    load_current: Array
+    load_forward: Array
+    load_excess: Array
+    load_open: Array
+    switch: Array
+    pull_in: Array
+    rail_joint: Array
+
+    @property
+    def count(self) -> int:
+        """How many specimens."""
+        return int(self.mains.shape[-1])
+
+    @property
+    def series_resistance(self) -> Array:
+        """Everything in series with the dropper [ohm], shape (n,)."""
+        return self.fuse + self.joint + self.inrush
+
+    @property
+    def parallel_resistance(self) -> Array:
+        """Everything resistive across the dropper, a resistor dropper itself included [ohm], shape (n,)."""
+        with np.errstate(divide="ignore"):
+            return np.asarray(1.0 / (1.0 / self.bleeder + 1.0 / self.dropper_resistance + 1.0 / self.dropper_short))
+
+
+def concatenate(parts: Sequence[Specimens]) -> Specimens:
+    """Specimens of one shape, one after the other."""
+    arrays = {name: np.concatenate([getattr(part, name) for part in parts], axis=-1) for name in ARRAYS}
+    return replace(parts[0], **arrays)
+
+
+def take(specimens: Specimens, index: slice | Array) -> Specimens:
+    """Some of the specimens."""
+    return replace(specimens, **{name: getattr(specimens, name)[..., index] for name in ARRAYS})
+
+
+ARRAYS = tuple(field.name for field in fields(Specimens) if field.name not in ("shape", "frequency"))
+
+Draw = Callable[[], Array]
+"""Gives the next coordinate of the sequence, shape (n,), evenly over 0 to 1."""
+
+
+class _Drawer:
+    """Hands out one coordinate of the sequence a part, always in the same order; 0.5 everywhere for a nominal board."""
+
+    def __init__(self, count: int, spread: bool) -> None:
+        self.count = count
+        self._points = iter(points(DIMENSIONS, count))
+        self._spread = spread
+
+    def even(self, low: float, high: float) -> Array:
+        """Evenly from `low` to `high`; their middle for a nominal board."""
+        coordinate = next(self._points) if self._spread else np.full(self.count, 0.5)
+        return low + (high - low) * coordinate
+
+    def part(self, value: Maybe, tolerance: float, unknown: tuple[float, float]) -> Array:
+        """A marked value within its tolerance, or evenly in the logarithm over `unknown` where it cannot be read."""
+        coordinate = next(self._points)
+        if isinstance(value, Unknown):
+            low, high = np.log(unknown)
+            return np.asarray(np.exp(low + (high - low) * coordinate))
+        share = 2.0 * coordinate - 1.0 if self._spread else np.zeros(self.count)
+        return value * (1.0 + tolerance * share)
+
+    def constant(self, value: float) -> Array:
+        """The same for all."""
+        return np.full(self.count, value)
+
+
+DIMENSIONS = 256
+"""Coordinates at hand: more than the parts of the largest board a case file accepts."""
+
+
+def as_marked(board: Board, count: int = 64) -> Specimens:
+    """The board as marked: nominal values and mains, 25 °C, no self-heating; parts that cannot be read take a wide range.
+
+    One specimen where everything is known, `count` of them where something is not.
+    """
+    sample = _build(board, _Drawer(count, spread=False), mains_spread=0.0, warm=False)
+    alike = all(np.all(getattr(sample, name)[..., :1] == getattr(sample, name)) for name in ARRAYS)
+    return take(sample, slice(0, 1)) if alike else sample
+
+
+def population(board: Board, count: int, mains_spread: float | None = None) -> Specimens:
+    """`count` healthy boards: parts evenly over their tolerances, zeners warm by themselves, mains ± `mains_spread` [1].
+
+    Without `mains_spread` the mains' own variation is taken, as for the bands of the states table.
+    """
+    spread = board.mains.variation if mains_spread is None else mains_spread
+    return _build(board, _Drawer(count, spread=True), spread, warm=True)
+
+
+def _build(board: Board, draw: _Drawer, mains_spread: float, warm: bool) -> Specimens:
+    mains = board.mains.voltage * (1.0 + mains_spread * (2.0 * draw.even(0.0, 1.0) - 1.0))
+    crest = draw.even(*known.CREST_FACTOR) if warm else draw.constant(float(np.sqrt(2.0)))
+    return Specimens(
+        shape=shape_of(board),
+        frequency=board.mains.frequency,
+        mains=mains,
+        crest=mains * crest,
+        fuse=draw.constant(0.0),
+        varistor=draw.constant(np.inf),
+        joint=draw.constant(0.0),
+        rail_joint=np.zeros((len(board.rails), draw.count)),
+        **_mains_side(board, draw),
+        **_rails(board, draw, warm),
+        **_loads(board, draw),
+    )
+
+
+def _mains_side(board: Board, draw: _Drawer) -> dict[str, Array]:
+    dropper, inrush, bleeder = board.dropper, board.inrush, board.bleeder
+    tolerance = known.DROPPER_TOLERANCE if dropper.tolerance is None else dropper.tolerance
+    capacitance, resistance = draw.constant(0.0), draw.constant(np.inf)
+    if dropper.resistance is not None:
+        tolerance = known.RESISTOR_TOLERANCE if dropper.tolerance is None else dropper.tolerance
+        resistance = draw.part(dropper.resistance, tolerance, known.UNKNOWN_DROPPER_RESISTANCE)
+    elif dropper.capacitance is not None:
+        capacitance = draw.part(dropper.capacitance, tolerance, known.UNKNOWN_DROPPER)
+    in_path = draw.constant(0.0)
+    if inrush is not None:
+        in_path = draw.part(inrush.resistance, _or(inrush.tolerance, known.RESISTOR_TOLERANCE), known.UNKNOWN_INRUSH)
+    across = draw.constant(np.inf)
+    if bleeder is not None:
+        one = draw.part(bleeder.resistance, _or(bleeder.tolerance, known.RESISTOR_TOLERANCE), known.UNKNOWN_BLEEDER)
+        across = one * (1 if isinstance(bleeder.resistance, Unknown) else bleeder.in_series)
+    return {
+        "capacitance": capacitance,
+        "dropper_resistance": resistance,
+        "dropper_short": draw.constant(np.inf),
+        "inrush": in_path,
+        "bleeder": across,
+        "junction": draw.constant(float(Junction.GOOD)),
+    }
+
+
+def _rails(board: Board, draw: _Drawer, warm: bool) -> dict[str, Array]:
+    rows: dict[str, list[Array]] = {name: [] for name in ("zener", "zener_kelvin_per_watt", "reservoir", "esr", "feed")}
+    for rail in board.rails:
+        rows["zener"].append(_zener(rail, draw))
+        rows["zener_kelvin_per_watt"].append(draw.even(*known.ZENER_KELVIN_PER_WATT) if warm else draw.constant(0.0))
+        capacitance = _reservoir(rail, draw)
+        rows["reservoir"].append(capacitance)
+        rows["esr"].append(_esr(capacitance, draw, warm))
+        rows["feed"].append(_feed(rail, draw))
+    arrays = {name: np.array(values) for name, values in rows.items()}
+    nothing = np.full((len(board.rails), draw.count), np.inf)
+    return {**arrays, "zener_short": nothing, "reservoir_leak": nothing, "board_leak": nothing}
+
+
+def _zener(rail: Rail, draw: _Drawer) -> Array:
+    if rail.zener is None:
+        return draw.constant(np.inf)
+    return draw.part(rail.zener.voltage, _or(rail.zener.tolerance, known.ZENER_TOLERANCE), known.UNKNOWN_ZENER)
+
+
+def _reservoir(rail: Rail, draw: _Drawer) -> Array:
+    if rail.reservoir is None:
+        return draw.constant(0.0)
+    tolerance = _or(rail.reservoir.tolerance, known.RESERVOIR_TOLERANCE)
+    return draw.part(rail.reservoir.capacitance, tolerance, known.UNKNOWN_RESERVOIR)
+
+
+def _esr(capacitance: Array, draw: _Drawer, warm: bool) -> Array:
+    low, high = np.log(known.ESR_HEALTHY)
+    spread = np.exp(draw.even(low, high)) if warm else draw.constant(known.ESR_NOMINAL)
+    with np.errstate(divide="ignore"):
+        return np.maximum(spread / capacitance, known.ESR_LEAST)
+
+
+def _feed(rail: Rail, draw: _Drawer) -> Array:
+    if rail.feed_resistance is None:
+        return draw.constant(np.inf)
+    return draw.part(rail.feed_resistance, _or(rail.feed_tolerance, known.RESISTOR_TOLERANCE), known.UNKNOWN_FEED)
+
+
+def _loads(board: Board, draw: _Drawer) -> dict[str, Array]:
+    count, loads = draw.count, board.loads
+    empty = np.empty((0, count))
+    resistance = [_load_resistance(load, draw) for load in loads]
+    current = [_load_current(load, draw) for load in loads]
+    forward = [draw.constant(np.inf if load.forward_voltage is None else load.forward_voltage) for load in loads]
+    pull_in = [draw.even(*known.TYPICAL_PULL_IN) for _ in loads]
+    zeros = np.zeros((len(loads), count))
+    return {
+        "load_resistance": np.array(resistance) if loads else empty,
+        "load_current": np.array(current) if loads else empty,
+        "load_forward": np.array(forward) if loads else empty,
+        "pull_in": np.array(pull_in) if loads else empty,
+        "load_excess": zeros,
+        "load_open": zeros,
+        "switch": zeros,
+    }
+
+
+LOAD_TOLERANCE = {
+    "coil": known.COIL_TOLERANCE,
+    "resistor": known.RESISTOR_TOLERANCE,
+    "led": known.RESISTOR_TOLERANCE,
+    "current": known.CURRENT_TOLERANCE,
+    "gate": known.CURRENT_TOLERANCE,
+}
+
+
+def load_tolerance(load: Load) -> float:
+    """The load's stated tolerance, or the one assumed for its kind [1]."""
+    return _or(load.tolerance, LOAD_TOLERANCE[load.kind])
+
+
+def _load_resistance(load: Load, draw: _Drawer) -> Array:
+    value = resistance_of(load)
+    if value is None:
+        return draw.constant(np.inf)
+    return draw.part(value, load_tolerance(load), known.UNKNOWN_RESISTANCE)
+
+
+def _load_current(load: Load, draw: _Drawer) -> Array:
+    if load.current is None:
+        return draw.constant(0.0)
+    return draw.part(load.current, load_tolerance(load), known.UNKNOWN_CURRENT)
+
+
+def _or(stated: float | None, assumed: float) -> float:
+    return assumed if stated is None else stated

@@ -1,0 +1,120 @@
+"""What the parts and the mains carry: powers, bleeder strings, stored charge and the time it takes to leave."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from benchtool.board import Board, Unknown
+from benchtool.physics import constants as known
+from benchtool.physics import laws
+from benchtool.physics.budget import dropper_tolerance
+from benchtool.physics.laws import Array
+from benchtool.physics.settled import Settled
+
+
+@dataclass(frozen=True, slots=True)
+class MainsPower:
+    """Each (n,): inrush resistor's voltage [V RMS] and power [W], apparent [VA] and real [W] power, power factor [1]."""
+
+    inrush_voltage: Array
+    inrush_power: Array
+    apparent: Array
+    real: Array
+    factor: Array
+
+
+def mains_power(settled: Settled) -> MainsPower:
+    """Powers on the mains side; the real power is the sum of what every part turns into heat or hands to the first rail."""
+    specimens = settled.specimens
+    current = settled.line_current
+    inrush = np.where(np.isfinite(specimens.inrush), specimens.inrush, 0.0)
+    series = np.where(np.isfinite(specimens.series_resistance), specimens.series_resistance, 0.0)
+    across = settled.dropper_voltage**2 + settled.dropper_dc**2
+    loss = 2.0 * np.pi * specimens.frequency * specimens.capacitance * known.DROPPER_LOSS_TANGENT
+    rectified = settled.supply_current * (settled.rail_voltage[0] + 2.0 * known.DIODE_DROP)
+    real = rectified + current**2 * series + across / specimens.parallel_resistance + loss * settled.dropper_voltage**2
+    apparent = specimens.mains * current
+    factor = real / np.maximum(apparent, 1e-12)
+    return MainsPower(current * inrush, current**2 * inrush, apparent, real, np.minimum(factor, 1.0))
+
+
+def highest_crest(board: Board) -> float:
+    """The crest of the highest mains the board may see [V]: √2 · nominal · (1 + variation)."""
+    return float(np.sqrt(2.0)) * board.mains.voltage * (1.0 + board.mains.variation)
+
+
+@dataclass(frozen=True, slots=True)
+class Discharge:
+    """What the dropper keeps after unplugging, in the slowest corner: capacitance [F], bleeder [ohm], times [s].
+
+    None where a value cannot be known; `bleeder` and the times are None as well where there is no bleeder.
+    `limited`: whether a limit at the plug applies at all (plug-connected and over 0.1 µF).
+    """
+
+    start: float
+    capacitance: float | None
+    bleeder: float | None
+    to_limit: float | None
+    wait: float | None
+    energy: float | None
+    limited: bool
+
+    @property
+    def slow(self) -> bool | None:
+        """Whether the plug stays above its limit for too long; None where that cannot be known."""
+        if not self.limited:
+            return False
+        if self.capacitance is None:
+            return None
+        return self.to_limit is None or self.to_limit > known.PLUG_LIMIT_SECONDS
+
+
+def discharge_of(board: Board) -> Discharge:
+    """The dropper's discharge through its bleeder: highest crest, dropper and bleeder at the high end of their tolerance."""
+    capacitance, bleeder = _highest_capacitance(board), _highest_bleeder(board)
+    start = highest_crest(board)
+    time, wait = None, None
+    if capacitance is not None and bleeder is not None:
+        time = float(laws.discharge_time(start, bleeder, capacitance, known.PLUG_LIMIT_VOLTS))
+        wait = max(5.0, 5.0 * float(np.ceil(bleeder * capacitance)))
+    return Discharge(
+        start=start,
+        capacitance=capacitance,
+        bleeder=bleeder,
+        to_limit=time,
+        wait=wait,
+        energy=None if capacitance is None else 0.5 * capacitance * start**2,
+        limited=_limited(board, capacitance),
+    )
+
+
+def _limited(board: Board, capacitance: float | None) -> bool:
+    if board.connected_by == "fixed" or board.dropper.kind == "resistor":
+        return False
+    return capacitance is None or capacitance > known.PLUG_EXEMPT
+
+
+def _highest_capacitance(board: Board) -> float | None:
+    value = board.dropper.capacitance
+    if board.dropper.kind == "resistor" or value is None or isinstance(value, Unknown):
+        return None
+    fitted = board.dropper.fitted or 0.0
+    return max(value, fitted) * (1.0 + dropper_tolerance(board))
+
+
+def _highest_bleeder(board: Board) -> float | None:
+    bleeder = board.bleeder
+    if bleeder is None or isinstance(bleeder.resistance, Unknown):
+        return None
+    tolerance = known.RESISTOR_TOLERANCE if bleeder.tolerance is None else bleeder.tolerance
+    return bleeder.resistance * bleeder.in_series * (1.0 + tolerance)
+
+
+def bleeder_share(board: Board) -> float | None:
+    """The highest voltage over one resistor of the bleeder string [V]: RMS of the highest mains, shared; None without one."""
+    if board.bleeder is None:
+        return None
+    return laws.string_share(board.mains.voltage * (1.0 + board.mains.variation), board.bleeder.in_series)
+

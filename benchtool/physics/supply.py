@@ -1,0 +1,137 @@
+"""What the mains, the dropper and the rectifier deliver into the first rail standing at a given voltage: mean values.
+
+Charge balance per half cycle (see `laws`). Everything resistive across the dropper carries its share in quadrature, so an open
+dropper leaves its bleeder feeding the board, and a resistor dropper is the case without a capacitor.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from benchtool.physics import constants as known
+from benchtool.physics import laws
+from benchtool.physics.laws import Array
+from benchtool.physics.specimens import Junction, Specimens
+
+STEP = 1e-3
+"""Voltage step for the supply's slope [V]."""
+
+
+@dataclass(frozen=True, slots=True)
+class Feed:
+    """What reaches the rectifier, independent of the rail: kept once per solution. Arrays (n,); `share`: of full-wave current."""
+
+    specimens: Specimens
+    series: Array
+    parallel: Array
+    connected: Array
+    share: Array
+    blocked_by_dc: Array
+
+
+def feed_of(specimens: Specimens) -> Feed:
+    """The mains side of `specimens`."""
+    series = specimens.series_resistance
+    connected = np.isfinite(series) & np.isfinite(specimens.rail_joint[0])
+    return Feed(
+        specimens=specimens,
+        series=np.where(connected, series, 1.0),
+        parallel=specimens.parallel_resistance,
+        connected=connected,
+        share=_share(specimens),
+        blocked_by_dc=_blocked(specimens),
+    )
+
+
+def _share(specimens: Specimens) -> Array:
+    """Share of a full-wave supply's current that the rectifier, in its state, passes on to the first rail."""
+    state = specimens.junction
+    if specimens.shape.rectifier == "bridge":
+        return np.select([state == Junction.GOOD, state == Junction.SERIES_SHORT], [1.0, 0.5], 0.0)
+    good = state == Junction.GOOD
+    if specimens.shape.zener_at_node:
+        good = good & np.isfinite(specimens.zener[0]) & ~np.isfinite(specimens.zener_short[0])
+    return np.where(good, 0.5, 0.0)
+
+
+def _blocked(specimens: Specimens) -> Array:
+    """Where current can pass one way only, so that the dropper charges to the crest and blocks; bool (n,)."""
+    state = specimens.junction
+    if specimens.shape.rectifier == "bridge":
+        return state == Junction.SERIES_OPEN
+    if specimens.shape.zener_at_node:
+        return np.isinf(specimens.zener[0]) & np.isinf(specimens.zener_short[0]) & (state == Junction.GOOD)
+    return state == Junction.RETURN_OPEN
+
+
+def half_swing(specimens: Specimens, rail: Array) -> Array:
+    """Half the swing of the rectifier's input with the first rail at `rail` [V]; shape (n,)."""
+    drop = known.DIODE_DROP
+    if specimens.shape.rectifier != "bridge":
+        return (rail + 2.0 * drop) / 2.0
+    return np.where(specimens.junction == Junction.SERIES_SHORT, (rail + 2.0 * drop) / 2.0, rail + 2.0 * drop)
+
+
+def _threshold(specimens: Specimens, rail: Array) -> Array:
+    """Voltage from which a resistive path conducts into the first rail [V]."""
+    drops = 2.0 if specimens.shape.rectifier == "bridge" else 1.0
+    return rail + drops * known.DIODE_DROP
+
+
+def supply_current(feed: Feed, rail: Array) -> tuple[Array, Array]:
+    """Mean current [A] into the first rail standing at `rail` [V], and its slope [S]; both (n,)."""
+    current = _current(feed, rail)
+    return current, (_current(feed, rail + STEP) - current) / STEP
+
+
+def _current(feed: Feed, rail: Array) -> Array:
+    specimens = feed.specimens
+    swing, threshold = half_swing(specimens, rail), _threshold(specimens, rail)
+    capacitive = laws.capacitor_current(
+        specimens.crest, specimens.frequency, specimens.capacitance, feed.series, np.maximum(swing, 0.0)
+    )
+    resistance = feed.parallel + feed.series
+    resistive = laws.resistor_current(specimens.crest, resistance, np.maximum(threshold, 0.0))
+    blocked = np.maximum(specimens.crest - threshold, 0.0) / resistance
+    alternating = feed.share * np.hypot(capacitive, resistive)
+    return np.where(feed.connected, np.where(feed.blocked_by_dc, blocked, alternating), 0.0)
+
+
+@dataclass(frozen=True, slots=True)
+class MainsSide:
+    """What a meter sees before the rectifier, each (n,): line current [A RMS], dropper voltage [V RMS, V DC]."""
+
+    line_current: Array
+    dropper_voltage: Array
+    dropper_dc: Array
+
+
+def mains_side(feed: Feed, rail: Array) -> MainsSide:
+    """Line current and dropper voltages with the first rail at `rail` [V]."""
+    specimens = feed.specimens
+    swing = np.maximum(half_swing(specimens, rail), 0.0)
+    k = laws.crest_factor_k(feed.series, specimens.capacitance, specimens.frequency)
+    crest = k * specimens.crest
+    across_capacitor = laws.capacitor_voltage(crest, swing)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        capacitive = laws.capacitor_line_current(crest, specimens.frequency, specimens.capacitance, swing)
+        resistive = laws.resistor_line_current(specimens.crest, feed.parallel + feed.series, swing)
+        by_resistance = resistive * np.where(np.isfinite(feed.parallel), feed.parallel, 0.0)
+    share = np.hypot(capacitive, 1e-15) ** 2 / (np.hypot(capacitive, 1e-15) ** 2 + resistive**2 + 1e-30)
+    flows = feed.connected & ~feed.blocked_by_dc
+    return MainsSide(
+        line_current=np.where(flows, np.hypot(capacitive, resistive), 0.0),
+        dropper_voltage=np.where(flows, share * across_capacitor + (1.0 - share) * by_resistance, 0.0),
+        dropper_dc=np.where(feed.connected, _standing_dc(feed, rail), 0.0),
+    )
+
+
+def _standing_dc(feed: Feed, rail: Array) -> Array:
+    """Mean voltage over the dropper [V], magnitude: the crest where it blocks, half the lopsidedness of a half-wave swing."""
+    specimens = feed.specimens
+    has_capacitor = specimens.capacitance > 0.0
+    lopsided = np.zeros_like(rail) if specimens.shape.rectifier == "bridge" else np.maximum(rail, 0.0) / 2.0
+    standing = np.where(feed.blocked_by_dc, np.maximum(specimens.crest - _threshold(specimens, rail), 0.0), lopsided)
+    return np.where(has_capacitor, standing, 0.0)
