@@ -7,29 +7,9 @@ from dataclasses import dataclass, field
 from typing import Annotated
 
 from benchtool.board import Board, Choice, Flag, Moment, Names, Quantity, Table, Tables, Text, Whole
+from benchtool.observed import Accuracy, AccuracyOf, Meter, Reading, ReadingValue
 
-ReadingValue = float | str | tuple[str, ...]
-"""A number in the reading's SI unit, one of its words, or (`look`) several of them."""
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Reading:
-    """One reading: what was read (a name of the readings catalogue), where, in which condition, and the value.
-
-    `on` names the switched loads that are commanded on while reading; None for a reading that knows no such state.
-    `clamp` [A] and `limit` [V] belong to rail-injection.
-    """
-
-    what: Annotated[str, Text(60, name=True)]
-    value: ReadingValue
-    rail: Annotated[str | None, Text(60, name=True)] = None
-    load: Annotated[str | None, Text(60, name=True)] = None
-    on: Annotated[tuple[str, ...] | None, Names()] = None
-    when: Annotated[str, Choice(("cold", "warm"))] = "cold"
-    lifted: Annotated[bool, Flag()] = False
-    clamp: Annotated[float | None, Quantity("A", 1e-5, 1.0)] = None
-    limit: Annotated[float | None, Quantity("V", 0.1, 1000.0)] = None
-
+__all__ = ["Accuracy", "AccuracyOf", "Case", "Meter", "Reading", "ReadingValue", "Repair", "Replaced", "Safe", "Ticket"]
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Ticket:
@@ -52,35 +32,6 @@ class Safe:
     discharge_tool: Annotated[str | None, Text()] = None
     last_voltage: Annotated[float | None, Quantity("V", 0.0, 2000.0)] = None
     last_time: Annotated[datetime.datetime | None, Moment(time_of_day=True)] = None
-
-
-@dataclass(frozen=True, slots=True)
-class Accuracy:
-    """A meter's two-sigma limit: share of the reading [1] and floor [`unit`], adding as root sum of squares."""
-
-    relative: float
-    floor: float
-
-
-@dataclass(frozen=True, slots=True)
-class AccuracyOf:
-    """A file's "percent + floor" for one range of the meter, the floor in `unit`."""
-
-    unit: str
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Meter:
-    """Accuracy of the instruments; the defaults of the case format."""
-
-    dc_voltage: Annotated[Accuracy, AccuracyOf("V")] = Accuracy(0.005, 0.020)
-    ac_voltage: Annotated[Accuracy, AccuracyOf("V")] = Accuracy(0.01, 0.3)
-    ac_low_voltage: Annotated[Accuracy, AccuracyOf("V")] = Accuracy(0.015, 0.010)
-    ripple: Annotated[Accuracy, AccuracyOf("V")] = Accuracy(0.05, 0.020)
-    capacitance: Annotated[Accuracy, AccuracyOf("F")] = Accuracy(0.02, 0.2e-9)
-    resistance: Annotated[Accuracy, AccuracyOf("ohm")] = Accuracy(0.009, 0.2)
-    ac_current: Annotated[Accuracy, AccuracyOf("A")] = Accuracy(0.015, 50e-6)
-    dc_current: Annotated[Accuracy, AccuracyOf("A")] = Accuracy(0.01, 20e-6)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

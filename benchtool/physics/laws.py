@@ -64,7 +64,7 @@ def resistor_current(crest: ArrayLike, resistance: ArrayLike, threshold: ArrayLi
     I = 2/(πR)·[crest·cos a − V'·(π/2 − a)], a = asin(V'/crest): the mean over the conduction angle, analytic.
     `threshold` V' is the voltage at which it starts to conduct [V]. Zero where the crest does not reach it.
     """
-    crest = np.asarray(crest, dtype=float)
+    crest = np.maximum(np.asarray(crest, dtype=float), 1e-9)
     ratio = np.clip(np.asarray(threshold) / crest, -1.0, 1.0)
     angle = np.arcsin(ratio)
     drive = crest * (np.cos(angle) - ratio * (np.pi / 2.0 - angle))
@@ -99,7 +99,7 @@ def capacitor_voltage(crest: ArrayLike, half_swing: ArrayLike) -> Array:
 
 def resistor_line_current(crest: ArrayLike, resistance: ArrayLike, threshold: ArrayLike) -> Array:
     """RMS current [A] in the mains lead of a resistor dropper that conducts above `threshold` [V] both ways. Analytic."""
-    crest = np.asarray(crest, dtype=float)
+    crest = np.maximum(np.asarray(crest, dtype=float), 1e-9)
     ratio = np.clip(np.asarray(threshold) / crest, 0.0, 1.0)
     angle = np.arcsin(ratio)
     span = np.pi / 2.0 - angle

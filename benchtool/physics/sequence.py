@@ -2,19 +2,22 @@
 
 from __future__ import annotations
 
+from functools import cache
+
 import numpy as np
 
 from benchtool.physics.laws import Array
 
 
-def _primes(count: int) -> list[int]:
+@cache
+def _primes(count: int) -> tuple[int, ...]:
     found: list[int] = []
     candidate = 2
     while len(found) < count:
         if all(candidate % prime for prime in found):
             found.append(candidate)
         candidate += 1
-    return found
+    return tuple(found)
 
 
 def points(dimensions: int, count: int) -> Array:

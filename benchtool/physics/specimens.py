@@ -12,6 +12,7 @@ from dataclasses import dataclass, fields, replace
 from enum import IntEnum
 
 import numpy as np
+from numpy.typing import NDArray
 
 from benchtool.board import Board, Load, Maybe, Rail, Unknown, resistance_of
 from benchtool.physics import constants as known
@@ -95,7 +96,7 @@ def concatenate(parts: Sequence[Specimens]) -> Specimens:
     return replace(parts[0], **arrays)
 
 
-def take(specimens: Specimens, index: slice | Array) -> Specimens:
+def take(specimens: Specimens, index: slice | NDArray[np.intp]) -> Specimens:
     """Some of the specimens."""
     return replace(specimens, **{name: getattr(specimens, name)[..., index] for name in ARRAYS})
 

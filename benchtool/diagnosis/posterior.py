@@ -1,0 +1,201 @@
+"""Which fault accounts for the readings: Bayes' rule over specimens, in logarithms until the last line.
+
+For every hypothesis specimens are drawn from the part tolerances and the fault's severities by one fixed sequence. A reading's
+likelihood under a hypothesis is its mean over them. Hypotheses that lead are drawn a second time, closer around the severities
+that account for the readings, so that a sharp reading is not judged by a handful of specimens.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from benchtool.board import Board
+from benchtool.catalogue.faults import UNEXPLAINED_WEIGHT
+from benchtool.catalogue.shows import SHOWS
+from benchtool.catalogue.strikes import scene_of
+from benchtool.diagnosis.hypotheses import Hypothesis, hypotheses_of
+from benchtool.diagnosis.likelihood import log_density, log_uniform_density, look_log_chance
+from benchtool.observed import Meter, Reading
+from benchtool.physics import constants as known
+from benchtool.physics.bench import Bench
+from benchtool.physics.laws import Array, two_sigma
+from benchtool.physics.sequence import points
+from benchtool.physics.specimens import DIMENSIONS, Specimens, concatenate, population
+
+DRAWN = 384
+"""Specimens a hypothesis."""
+REDRAWN = 1024
+LEADS_FROM = 0.005
+"""Probability from which a hypothesis is drawn again around the severities that count."""
+COUNTS_FROM = 1e-3
+"""Share of the best specimen's likelihood from which a severity counts."""
+
+ELSEWHERE = ("bleeder-resistance",)
+"""Readings that belong to the safety findings and do not compete for the complaint."""
+
+
+@dataclass(frozen=True, slots=True)
+class Evidence:
+    """All readings under all specimens of one hypothesis: log densities (readings, n), and log weight of each specimen (n,)."""
+
+    hypothesis: Hypothesis
+    bench: Bench
+    densities: Array
+    log_prior: Array
+
+    @property
+    def log_joint(self) -> Array:
+        """Logarithm of each specimen's share in the likelihood of all readings, (n,)."""
+        return np.asarray(self.densities.sum(axis=0) + self.log_prior)
+
+    @property
+    def log_likelihood(self) -> float:
+        """Logarithm of the likelihood of all readings."""
+        return log_sum(self.log_joint)
+
+    def shares(self) -> Array:
+        """Each specimen's share in the hypothesis given the readings, (n,), adding up to one."""
+        return np.asarray(np.exp(self.log_joint - self.log_likelihood))
+
+
+@dataclass(frozen=True, slots=True)
+class Posterior:
+    """Every hypothesis with its evidence and probability; `unexplained` stands apart. Probabilities add up to one."""
+
+    board: Board
+    meter: Meter
+    readings: tuple[Reading, ...]
+    evidence: tuple[Evidence, ...]
+    probabilities: Array
+    unexplained: float
+    uniform: Array
+
+
+def log_sum(values: Array) -> float:
+    """Logarithm of the sum of exponentials, without overflow."""
+    top = float(np.max(values))
+    return top + float(np.log(np.sum(np.exp(values - top))))
+
+
+def mains_read(readings: Sequence[Reading]) -> float | None:
+    """The mains voltage that was read [V RMS], or None; the last one where there are several."""
+    read = [reading.value for reading in readings if reading.what == "mains-voltage"]
+    return read[-1] if read and isinstance(read[-1], float) and read[-1] > 0.0 else None
+
+
+def reading_population(board: Board, meter: Meter, readings: Sequence[Reading], count: int) -> Specimens:
+    """Healthy boards as they stood while reading: mains nominal ± 4 %, or what was read within the meter's accuracy."""
+    read = mains_read(readings)
+    if read is None:
+        return population(board, count, known.READING_MAINS_SPREAD)
+    spread = float(two_sigma(read, meter.ac_voltage.relative, meter.ac_voltage.floor)) / read
+    there = replace(board, mains=replace(board.mains, voltage=read))
+    return population(there, count, spread)
+
+
+def usable(readings: Sequence[Reading]) -> tuple[Reading, ...]:
+    """The readings that weigh on the suspects, the same reading with the same value only once."""
+    known_kinds = [r for r in readings if (r.what in SHOWS or r.what == "look") and r.what not in ELSEWHERE]
+    return tuple(dict.fromkeys(known_kinds))
+
+
+def posterior_of(board: Board, meter: Meter, readings: Sequence[Reading]) -> Posterior:
+    """The probabilities of everything that may be wrong with `board`, given `readings`."""
+    taken = usable(readings)
+    judge = _Judge(board, meter, taken)
+    evidence = judge.first()
+    probabilities, _ = _weigh(judge, evidence)
+    evidence = [
+        judge.again(item) if probability > LEADS_FROM and item.hypothesis.faults else item
+        for item, probability in zip(evidence, probabilities, strict=True)
+    ]
+    probabilities, unexplained = _weigh(judge, evidence)
+    return Posterior(board, meter, taken, tuple(evidence), probabilities, unexplained, judge.uniform)
+
+
+def _weigh(judge: _Judge, evidence: Sequence[Evidence]) -> tuple[Array, float]:
+    """Bayes' rule: prior weight times likelihood, `unexplained` competing with readings that are mistakes."""
+    logs = [np.log(item.hypothesis.weight) + item.log_likelihood for item in evidence]
+    logs.append(np.log(UNEXPLAINED_WEIGHT) + float(judge.uniform.sum()))
+    stacked = np.array(logs)
+    shares = np.exp(stacked - log_sum(stacked))
+    return shares[:-1], float(shares[-1])
+
+
+class _Judge:
+    """Draws specimens of a hypothesis and judges the readings on them."""
+
+    def __init__(self, board: Board, meter: Meter, readings: tuple[Reading, ...]) -> None:
+        self.board, self.meter, self.readings = board, meter, readings
+        self.uniform = np.array([log_uniform_density(reading, board) for reading in readings])
+        self._mains_known = mains_read(readings) is not None
+
+    def first(self) -> list[Evidence]:
+        """Every hypothesis, its severities evenly drawn; all of them settled in one pass."""
+        hypotheses = hypotheses_of(self.board)
+        healthy = reading_population(self.board, self.meter, self.readings, DRAWN)
+        struck = [self._strike(hypothesis, healthy, 0.0, 1.0) for hypothesis in hypotheses]
+        densities = self._densities(Bench(concatenate(struck)))
+        parts = np.split(densities, len(hypotheses), axis=1)
+        level = np.full(DRAWN, -np.log(DRAWN))
+        return [
+            self._evidence(hypothesis, Bench(specimens), part, level)
+            for hypothesis, specimens, part in zip(hypotheses, struck, parts, strict=True)
+        ]
+
+    def again(self, item: Evidence) -> Evidence:
+        """A hypothesis drawn closer: only the severities that account for the readings, their chance weighed in."""
+        joint = item.log_joint
+        severity = _severity(len(joint))
+        counts = severity[joint > joint.max() + np.log(COUNTS_FROM)]
+        margin = 2.0 / len(joint)
+        low, high = max(float(counts.min()) - margin, 0.0), min(float(counts.max()) + margin, 1.0)
+        healthy = reading_population(self.board, self.meter, self.readings, REDRAWN)
+        bench = Bench(self._strike(item.hypothesis, healthy, low, high))
+        level = np.full(REDRAWN, np.log(high - low) - np.log(REDRAWN))
+        return self._evidence(item.hypothesis, bench, self._densities(bench), level)
+
+    def _strike(self, hypothesis: Hypothesis, healthy: Specimens, low: float, high: float) -> Specimens:
+        specimens = healthy
+        for number, struck in enumerate(hypothesis.faults):
+            if self._mains_known and struck.fault.name in ("mains-low", "mains-high"):
+                continue
+            even = _severity(healthy.count, number)
+            severity = low + (high - low) * even if number == 0 else even
+            specimens = struck.fault.strike(specimens, scene_of(self.board, struck.place, severity))
+        return specimens
+
+    def _densities(self, bench: Bench) -> Array:
+        rows = np.zeros((len(self.readings), bench.specimens.count))
+        for row, reading in enumerate(self.readings):
+            if reading.what in ("look", "mains-voltage"):
+                continue
+            rows[row] = log_density(SHOWS[reading.what](bench, self.board, reading.check), reading, self.meter)
+        return rows
+
+    def _evidence(self, hypothesis: Hypothesis, bench: Bench, densities: Array, level: Array) -> Evidence:
+        rows = densities.copy()
+        for row, reading in enumerate(self.readings):
+            if reading.what == "look":
+                rows[row] = look_log_chance(hypothesis, reading.value)
+            if reading.what == "mains-voltage" and isinstance(reading.value, float):
+                rows[row] = self._log_mains(hypothesis, reading.value)
+        return Evidence(hypothesis, bench, rows, level)
+
+    def _log_mains(self, hypothesis: Hypothesis, volts: float) -> float:
+        """Mains are anywhere in their range, or with `mains-low` and `mains-high` anywhere in a band of the same width beyond it."""
+        nominal, variation = self.board.mains.voltage, self.board.mains.variation
+        slack = float(two_sigma(volts, self.meter.ac_voltage.relative, self.meter.ac_voltage.floor))
+        bands = {"mains-low": (0.70 - variation, 1.0 - variation), "mains-high": (1.0 + variation, 1.20 + variation)}
+        low, high = bands.get(hypothesis.name, (1.0 - variation, 1.0 + variation))
+        low, high = low * nominal, high * nominal
+        outside = max(low - volts, volts - high, 0.0)
+        return float(-np.log(max(high - low, slack)) - 0.5 * (2.0 * outside / slack) ** 2)
+
+
+def _severity(count: int, number: int = 0) -> Array:
+    """The severity coordinate of the first or second fault, apart from every coordinate the parts are drawn by."""
+    return np.asarray(points(DIMENSIONS + 2, count)[DIMENSIONS + number])
