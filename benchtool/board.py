@@ -44,7 +44,7 @@ class Choice:
 
 @dataclass(frozen=True, slots=True)
 class Text:
-    """The user's own words, one line at most `limit` characters long; a name may not be empty, a note may have `lines`."""
+    """The user's own words, at most `limit` characters; a name may not be empty, only with `lines` more than one line."""
 
     limit: int = 500
     name: bool = False

@@ -62,7 +62,12 @@ def _warm(check: Check) -> bool:
 
 
 def _resistance(value: Array, error: float = 0.0) -> Shown:
-    return Shown(value, error * value, opened=np.isinf(value), shorted=value < 1.0)
+    return Shown(value, error * _finite(value), opened=np.isinf(value), shorted=value < 1.0)
+
+
+def _finite(value: Array) -> Array:
+    """The numbers, nil where the meter shows a word."""
+    return np.where(np.isfinite(value), value, 0.0)
 
 
 def _mains(bench: Bench, board: Board, check: Check) -> Shown:
@@ -187,7 +192,7 @@ def _fuse(bench: Bench, board: Board, check: Check) -> Shown:
 
 def _varistor(bench: Bench, board: Board, check: Check) -> Shown:
     value = bench.specimens.varistor
-    return Shown(value, 0.05 * value, opened=np.isinf(value), shorted=value < 50.0)
+    return Shown(value, 0.05 * _finite(value), opened=np.isinf(value), shorted=value < 50.0)
 
 
 def _path(bench: Bench, board: Board, check: Check) -> Shown:
@@ -225,7 +230,7 @@ def _zener(bench: Bench, board: Board, check: Check) -> Shown:
     short, voltage = bench.specimens.zener_short[index], bench.specimens.zener[index]
     shorted = np.isfinite(short)
     value = np.where(shorted, np.minimum(known.ZENER_CURRENT * short, voltage), voltage)
-    return Shown(value, 0.01 * value, opened=np.isinf(value), shorted=shorted)
+    return Shown(value, 0.01 * _finite(value), opened=np.isinf(value), shorted=shorted)
 
 
 def _reservoir(bench: Bench, board: Board, check: Check) -> Shown:
@@ -238,7 +243,7 @@ def _reservoir(bench: Bench, board: Board, check: Check) -> Shown:
 
 def _esr(bench: Bench, board: Board, check: Check) -> Shown:
     value = bench.specimens.esr[_rail(board, check)]
-    return Shown(value, 0.05 * value, opened=value > 1e3)
+    return Shown(value, 0.05 * _finite(value), opened=value > 1e3)
 
 
 def _test_volts(board: Board, index: int, share: float) -> float:

@@ -22,8 +22,8 @@ from benchtool.observed import Meter, Reading
 from benchtool.physics import constants as known
 from benchtool.physics.bench import Bench
 from benchtool.physics.laws import Array, two_sigma
-from benchtool.physics.sequence import points
-from benchtool.physics.specimens import DIMENSIONS, Specimens, concatenate, population
+from benchtool.physics.sequence import SECOND_SEVERITY, SEVERITY, apart
+from benchtool.physics.specimens import Specimens, concatenate, population
 
 DRAWN = 384
 """Specimens a hypothesis."""
@@ -138,18 +138,19 @@ class _Judge:
         hypotheses = hypotheses_of(self.board)
         healthy = reading_population(self.board, self.meter, self.readings, DRAWN)
         struck = [self._strike(hypothesis, healthy, 0.0, 1.0) for hypothesis in hypotheses]
-        densities = self._densities(Bench(concatenate(struck)))
-        parts = np.split(densities, len(hypotheses), axis=1)
+        bench = Bench(concatenate(struck))
+        densities = self._densities(bench)
         level = np.full(DRAWN, -np.log(DRAWN))
+        slices = [slice(start, start + DRAWN) for start in range(0, bench.specimens.count, DRAWN)]
         return [
-            self._evidence(hypothesis, Bench(specimens), part, level)
-            for hypothesis, specimens, part in zip(hypotheses, struck, parts, strict=True)
+            self._evidence(hypothesis, bench.part(where), densities[:, where], level)
+            for hypothesis, where in zip(hypotheses, slices, strict=True)
         ]
 
     def again(self, item: Evidence) -> Evidence:
         """A hypothesis drawn closer: only the severities that account for the readings, their chance weighed in."""
         joint = item.log_joint
-        severity = _severity(len(joint))
+        severity = apart(SEVERITY, len(joint))
         counts = severity[joint > joint.max() + np.log(COUNTS_FROM)]
         margin = 2.0 / len(joint)
         low, high = max(float(counts.min()) - margin, 0.0), min(float(counts.max()) + margin, 1.0)
@@ -163,8 +164,10 @@ class _Judge:
         for number, struck in enumerate(hypothesis.faults):
             if self._mains_known and struck.fault.name in ("mains-low", "mains-high"):
                 continue
-            even = _severity(healthy.count, number)
-            severity = low + (high - low) * even if number == 0 else even
+            if number == 0:
+                severity = low + (high - low) * apart(SEVERITY, healthy.count)
+            else:
+                severity = apart(SECOND_SEVERITY, healthy.count)
             specimens = struck.fault.strike(specimens, scene_of(self.board, struck.place, severity))
         return specimens
 
@@ -194,8 +197,3 @@ class _Judge:
         low, high = low * nominal, high * nominal
         outside = max(low - volts, volts - high, 0.0)
         return float(-np.log(max(high - low, slack)) - 0.5 * (2.0 * outside / slack) ** 2)
-
-
-def _severity(count: int, number: int = 0) -> Array:
-    """The severity coordinate of the first or second fault, apart from every coordinate the parts are drawn by."""
-    return np.asarray(points(DIMENSIONS + 2, count)[DIMENSIONS + number])

@@ -2,27 +2,46 @@
 
 from __future__ import annotations
 
+from dataclasses import fields, replace
+
 from benchtool.physics.laws import Array
 from benchtool.physics.mean_value import settle
-from benchtool.physics.sequence import points
+from benchtool.physics.sequence import METER_WINDOW, apart
 from benchtool.physics.settled import Settled
-from benchtool.physics.specimens import Specimens
+from benchtool.physics.specimens import Specimens, take
+
+SETTLED_ARRAYS = tuple(field.name for field in fields(Settled) if field.name != "specimens")
 
 
 class Bench:
-    """Holds `specimens` and remembers what they settled to in each state asked for."""
+    """Holds `specimens` and remembers what they settled to in each state asked for.
 
-    def __init__(self, specimens: Specimens) -> None:
+    A part of a bench takes its share of what the whole settled to, so that many hypotheses are solved in one pass.
+    """
+
+    def __init__(self, specimens: Specimens, whole: Bench | None = None, where: slice = slice(None)) -> None:
         self.specimens = specimens
+        self._whole, self._where = whole, where
         self._settled: dict[tuple[frozenset[str], bool], Settled] = {}
+
+    def part(self, where: slice) -> Bench:
+        """Some of the specimens, as a bench of their own."""
+        return Bench(take(self.specimens, where), self, where)
 
     def settled(self, on: tuple[str, ...] | None = (), *, warm: bool = False) -> Settled:
         """The settled state with the switched loads `on` commanded on; `warm` after 15 minutes on."""
         key = (frozenset(on or ()), warm)
         if key not in self._settled:
-            self._settled[key] = settle(self.specimens, tuple(on or ()), warm=warm)
+            self._settled[key] = self._settle(tuple(on or ()), warm)
         return self._settled[key]
+
+    def _settle(self, on: tuple[str, ...], warm: bool) -> Settled:
+        if self._whole is None:
+            return settle(self.specimens, on, warm=warm)
+        whole = self._whole.settled(on, warm=warm)
+        arrays = {name: getattr(whole, name)[..., self._where] for name in SETTLED_ARRAYS}
+        return replace(whole, specimens=self.specimens, **arrays)
 
     def chance(self) -> Array:
         """A coordinate evenly over 0 to 1 for what depends on the meter and not on the specimen, (n,)."""
-        return points(1, self.specimens.count)[0]
+        return apart(METER_WINDOW, self.specimens.count)

@@ -20,6 +20,18 @@ def _primes(count: int) -> tuple[int, ...]:
     return tuple(found)
 
 
+PART_COORDINATES = 256
+"""Coordinates for the parts of a board: more than the largest board a case file accepts has."""
+SEVERITY, SECOND_SEVERITY, METER, METER_WINDOW, METER_BLUR = range(5)
+"""Coordinates for what is no part: how bad a fault is, and what depends on the meter."""
+
+
+def apart(coordinate: int, count: int) -> Array:
+    """`count` points of a coordinate that no part is drawn by, evenly over 0 to 1; (count,)."""
+    step = np.sqrt(float(_primes(PART_COORDINATES + coordinate + 1)[-1]))
+    return np.asarray((0.5 + step * np.arange(1, count + 1)) % 1.0)
+
+
 def points(dimensions: int, count: int) -> Array:
     """`count` points of Richtmyer's sequence, shape (dimensions, count), each coordinate evenly over 0 to 1.
 

@@ -17,7 +17,7 @@ from numpy.typing import NDArray
 from benchtool.board import Board, Load, Maybe, Rail, Unknown, resistance_of
 from benchtool.physics import constants as known
 from benchtool.physics.laws import Array
-from benchtool.physics.sequence import points
+from benchtool.physics.sequence import PART_COORDINATES, points
 from benchtool.physics.shape import Shape, shape_of
 
 
@@ -112,7 +112,7 @@ class _Drawer:
 
     def __init__(self, count: int, spread: bool) -> None:
         self.count = count
-        self._points = iter(points(DIMENSIONS, count))
+        self._points = iter(points(PART_COORDINATES, count))
         self._spread = spread
 
     def even(self, low: float, high: float) -> Array:
@@ -133,9 +133,6 @@ class _Drawer:
         """The same for all."""
         return np.full(self.count, value)
 
-
-DIMENSIONS = 256
-"""Coordinates at hand: more than the parts of the largest board a case file accepts."""
 
 
 def as_marked(board: Board, count: int = 64) -> Specimens:

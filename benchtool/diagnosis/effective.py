@@ -1,0 +1,171 @@
+"""What the dropper acts as: current and capacitance back-solved from the readings, with the marked loads.
+
+A rail that regulates only tells that the supply is at least enough; one that has left regulation tells how much it gets.
+Low and high are the 2.5 and 97.5 % points over part tolerances, mains, crest factor and meter; the dropper's own tolerance has
+no part in them, since it is what is asked for.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from benchtool.board import Board
+from benchtool.catalogue.readings import READING_KINDS
+from benchtool.catalogue.shows import SHOWS
+from benchtool.diagnosis.likelihood import accuracy_of
+from benchtool.diagnosis.posterior import reading_population
+from benchtool.observed import Check, Meter, Reading
+from benchtool.physics.bench import Bench
+from benchtool.physics.budget import (
+    agreed,
+    back_solved_capacitance,
+    capacitance_giving,
+    dropout_capacitance,
+)
+from benchtool.physics.laws import Array, two_sigma
+from benchtool.physics.mean_value import demand_at, settle
+from benchtool.physics.sequence import METER, apart
+from benchtool.physics.specimens import Specimens, as_marked
+
+DRAWN = 256
+LOW, HIGH = 2.5, 97.5
+"""Percent points of a 95 % band."""
+BY_LINE = ("line-current", "inrush-voltage")
+"""Readings that tell the dropper's current on the mains side."""
+
+
+@dataclass(frozen=True, slots=True)
+class Effective:
+    """Back-solved current into the first rail [A] and dropper [F]; None where only a bound, or nothing, is known."""
+
+    capacitance: float | None = None
+    capacitance_low: float | None = None
+    capacitance_high: float | None = None
+    current: float | None = None
+    current_low: float | None = None
+    current_high: float | None = None
+    readings: tuple[Reading, ...] = ()
+
+    @property
+    def spread(self) -> float:
+        """High over low; infinite for a mere bound."""
+        if self.current_low is None or self.current_high is None or self.current_low <= 0.0:
+            return float("inf")
+        return self.current_high / self.current_low
+
+
+def effective_of(board: Board, meter: Meter, readings: Sequence[Reading]) -> Effective:
+    """The tightest figure that one of the readings gives, else the best lower bound, else nothing."""
+    solver = _Solver(board, meter, readings)
+    figures = [figure for reading in readings if (figure := solver.figure(reading)) is not None]
+    if figures:
+        return min(figures, key=lambda figure: figure.spread)
+    bounds = [bound for reading in readings if (bound := solver.bound(reading)) is not None]
+    return max(bounds, key=lambda bound: bound.current_low or 0.0, default=Effective())
+
+
+class _Solver:
+    """The healthy spread of the board with everything but the dropper, and the board as marked."""
+
+    def __init__(self, board: Board, meter: Meter, readings: Sequence[Reading]) -> None:
+        self.board, self.meter = board, meter
+        self.spread = reading_population(board, meter, readings, DRAWN)
+        self.marked = as_marked(board)
+        self.bench = Bench(self.spread)
+
+    def figure(self, reading: Reading) -> Effective | None:
+        """What this reading says outright, or None where it says nothing or only a bound."""
+        if not isinstance(reading.value, float):
+            return None
+        if reading.what == "rail-voltage" and self._on_first_rail(reading):
+            return self._by_rail(reading, reading.value) if self._band(reading) == "below" else None
+        if reading.what in BY_LINE and self.board.dropper.kind == "capacitor":
+            return self._by_line(reading, reading.value)
+        return None
+
+    def bound(self, reading: Reading) -> Effective | None:
+        """The least supply that holds the first rail where this reading found it regulating."""
+        if reading.what != "rail-voltage" or not self._on_first_rail(reading) or self._band(reading) != "within":
+            return None
+        on, warm = reading.on or (), reading.when == "warm"
+        if self.board.dropper.kind != "capacitor" or self.board.rails[0].zener is None:
+            return None
+        capacitance = dropout_capacitance(self.spread, on, warm=warm)
+        low = _point(capacitance, LOW)
+        if low is None:
+            return None
+        held = _with(self.spread, capacitance)
+        supply = settle(held, on, warm=warm).supply_current
+        return Effective(capacitance_low=low, current_low=_point(supply, LOW), readings=(reading,))
+
+    def _on_first_rail(self, reading: Reading) -> bool:
+        return reading.rail == self.board.rails[0].name
+
+    def _band(self, reading: Reading) -> str:
+        """Whether the reading lies below, within or above what healthy boards of this kind show."""
+        shown = SHOWS[reading.what](self.bench, self.board, reading.check).value
+        assert shown is not None and isinstance(reading.value, float)
+        slack = self._two_sigma(reading.check, reading.value)
+        if reading.value < np.percentile(shown, LOW) - slack:
+            return "below"
+        return "above" if reading.value > np.percentile(shown, HIGH) + slack else "within"
+
+    def _two_sigma(self, check: Check, value: float) -> float:
+        accuracy = accuracy_of(READING_KINDS[check.what], self.meter)
+        return float(two_sigma(value, accuracy.relative, accuracy.floor))
+
+    def _read(self, reading: Reading, value: float) -> Array:
+        """The true value behind the reading, spread over the meter's accuracy, (n,)."""
+        even = apart(METER, DRAWN)
+        return np.asarray(value + self._two_sigma(reading.check, value) * (2.0 * even - 1.0))
+
+    def _by_rail(self, reading: Reading, value: float) -> Effective:
+        on, warm = reading.on or (), reading.when == "warm"
+        read, here = self._read(reading, value), np.full(self.marked.count, value)
+        current = demand_at(self.spread, on, warm, read)
+        nominal = demand_at(self.marked, on, warm, here)
+        capacitor = self.board.dropper.kind == "capacitor"
+        capacitance = back_solved_capacitance(self.spread, current, read) if capacitor else np.full(DRAWN, np.nan)
+        at_mark = back_solved_capacitance(self.marked, nominal, here) if capacitor else np.array([np.nan])
+        return _effective(reading, at_mark, capacitance, nominal, current)
+
+    def _by_line(self, reading: Reading, value: float) -> Effective | None:
+        on, warm, what = reading.on or (), reading.when == "warm", reading.what
+
+        def solve(specimens: Specimens, read: Array) -> tuple[Array, Array]:
+            if what == "inrush-voltage":
+                read = read / specimens.inrush
+            capacitance = capacitance_giving(specimens, on, warm, lambda settled: settled.line_current, read)
+            settled = settle(_with(specimens, capacitance), on, warm=warm)
+            return capacitance, np.where(np.isfinite(capacitance), settled.supply_current, np.nan)
+
+        capacitance, current = solve(self.spread, self._read(reading, value))
+        if _point(capacitance, LOW) is None:
+            return None
+        at_mark, nominal = solve(self.marked, np.full(self.marked.count, value))
+        return _effective(reading, at_mark, capacitance, nominal, current)
+
+
+def _with(specimens: Specimens, capacitance: Array) -> Specimens:
+    return replace(specimens, capacitance=np.where(np.isfinite(capacitance), capacitance, specimens.capacitance))
+
+
+def _effective(reading: Reading, at_mark: Array, capacitance: Array, nominal: Array, current: Array) -> Effective:
+    return Effective(
+        capacitance=agreed(at_mark),
+        capacitance_low=_point(capacitance, LOW),
+        capacitance_high=_point(capacitance, HIGH),
+        current=agreed(nominal),
+        current_low=_point(current, LOW),
+        current_high=_point(current, HIGH),
+        readings=(reading,),
+    )
+
+
+def _point(values: Array, percent: float) -> float | None:
+    """A percent point, or None where more than a tenth of the specimens have no answer."""
+    finite = values[np.isfinite(values)]
+    return None if finite.size < 0.9 * values.size else float(np.percentile(finite, percent))
