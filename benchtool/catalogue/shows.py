@@ -116,18 +116,17 @@ def _dropper_dc(bench: Bench, board: Board, check: Check) -> Shown:
     return Shown(value, 0.05 * value + 0.5)
 
 
-def runs(bench: Bench, board: Board, load: int, *, warm: bool = False) -> tuple[Array, Array]:
-    """Chance that load `load` runs when it is meant to, and that it runs when it is not, each (n,).
+def runs(bench: Bench, board: Board, load: int, on: tuple[str, ...], *, warm: bool = False) -> tuple[Array, Array]:
+    """Chance that load `load` runs with the loads `on` commanded on, itself among them, and that it runs unasked, each (n,).
 
     A switched load needs the controller alive, its transistor and voltage enough; see the case format's section 4.
     """
     specimens, record = bench.specimens, board.loads[load]
-    meant = (record.name,) if record.switched else ()
-    enough_on = _enough(bench, board, load, meant, warm)
+    enough_on = _enough(bench, board, load, on, warm)
     if not record.switched:
         return enough_on, np.zeros(specimens.count)
     switch = specimens.switch[load]
-    lives = _controller_lives(bench, board, meant, warm)
+    lives = _controller_lives(bench, board, on, warm)
     stuck = switch == Switch.STUCK
     meant_chance = np.where(stuck, enough_on, np.where(switch == Switch.OPEN, 0.0, enough_on * lives))
     return meant_chance, np.where(stuck, _enough(bench, board, load, (), warm), 0.0)
@@ -164,7 +163,8 @@ def _controller_lives(bench: Bench, board: Board, on: tuple[str, ...], warm: boo
 
 def _responds(bench: Bench, board: Board, check: Check) -> Shown:
     load = _load(board, check)
-    when_meant, when_not = runs(bench, board, load, warm=_warm(check))
+    on = (board.loads[load].name,) if board.loads[load].switched else ()
+    when_meant, when_not = runs(bench, board, load, on, warm=_warm(check))
     always = when_not * SURE
     yes = when_meant * (1.0 - when_not) * SURE
     rest = 1.0 - always - yes

@@ -17,8 +17,6 @@ from benchtool.physics.laws import Array
 
 CLEARLY = 2.0
 """Natural logarithm by which a mistake must account for the pair better than the best single fault."""
-LIKELY_CAUSES = 1e-3
-"""Prior share a fault needs to speak for a pair: what hardly ever happens is no account."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -32,7 +30,7 @@ class Disagreement:
 
 def disagreements(posterior: Posterior) -> tuple[Disagreement, ...]:
     """Every pair of readings that no single fault reconciles."""
-    singles = [item for item in posterior.evidence if len(item.hypothesis.faults) < 2]
+    singles = [item.first for item in posterior.evidence if len(item.hypothesis.faults) < 2]
     return tuple(_found(posterior, singles))
 
 

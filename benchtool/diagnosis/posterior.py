@@ -45,6 +45,12 @@ class Evidence:
     bench: Bench
     densities: Array
     log_prior: Array
+    wide: Evidence | None = None
+
+    @property
+    def first(self) -> Evidence:
+        """The evidence with every severity drawn evenly, as before any reading."""
+        return self if self.wide is None else self.wide
 
     @property
     def log_joint(self) -> Array:
@@ -157,7 +163,7 @@ class _Judge:
         healthy = reading_population(self.board, self.meter, self.readings, REDRAWN)
         bench = Bench(self._strike(item.hypothesis, healthy, low, high))
         level = np.full(REDRAWN, np.log(high - low) - np.log(REDRAWN))
-        return self._evidence(item.hypothesis, bench, self._densities(bench), level)
+        return replace(self._evidence(item.hypothesis, bench, self._densities(bench), level), wide=item)
 
     def _strike(self, hypothesis: Hypothesis, healthy: Specimens, low: float, high: float) -> Specimens:
         specimens = healthy

@@ -11,16 +11,34 @@ from dataclasses import dataclass
 import numpy as np
 
 from benchtool.board import Board, Unknown
-from benchtool.catalogue.faults import LATENT_BLEEDER
 from benchtool.observed import Reading
 from benchtool.physics import constants as known
 from benchtool.physics import laws
 from benchtool.physics.stress import Discharge, bleeder_share, discharge_of, highest_crest
+from benchtool.quantities import show, show_up
+
+SENTENCES = {
+    "bleeder-open": "The bleeder is open or raised: {stored_V} may stay in the dropper for hours. Discharge by hand and measure.",
+    "bleeder-low": "The bleeder is low: it runs hot and loads the dropper. Replace it with its marked value.",
+    "no-bleeder": "No bleeder is stated: {stored_V} may stay in the dropper for hours. Discharge by hand and measure.",
+    "slow-discharge": "The plug pins fall to {limit_V} only after {seconds} by this supply alone; the limit is {limit_s} "
+    "(IEC 60335-1 22.5). Discharge by hand and measure.",
+    "bleeder-overvoltage": "Each resistor of the bleeder string stands {each_V} against a rating of {rated_V}: it may fail open.",
+    "no-safety-class": "The dropper has no safety class: across or in the mains it must have one (IEC 60384-14).",
+    "dropper-overvoltage": "The dropper is rated {rated_V} AC and may see {highest_V}.",
+}
+"""A sentence for every finding; the figures are named as in `Finding.figures`."""
+EXTRAS = {"read_ohm": "It was read as {read_ohm}."}
+UNITS = {"V": "V", "s": "s", "ohm": "ohm", "seconds": "s"}
+
+
+def _figure(key: str, value: float, ascii: bool) -> str:
+    unit = UNITS[key.rsplit("_", 1)[-1]]
+    return show_up(value, unit, ascii=ascii) if key == "seconds" else show(value, unit, ascii=ascii)
+
 
 RAISED = 1.5
 """A bleeder over this many times its mark counts as raised."""
-SAID_FROM = 0.05
-"""Probability from which a bleeder fault is said; below it the standing caution is enough."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -30,6 +48,12 @@ class Finding:
     fault: str
     probability: float
     figures: dict[str, float]
+
+    def sentence(self, *, ascii: bool = False) -> str:
+        """The finding in words, with what to measure. Times are rounded up."""
+        shown = {key: _figure(key, value, ascii) for key, value in self.figures.items()}
+        parts = [SENTENCES[self.fault], *(EXTRAS[key] for key in shown if key in EXTRAS)]
+        return " ".join(parts).format(**shown)
 
 
 def safety_findings(board: Board, readings: Sequence[Reading]) -> tuple[Finding, ...]:
@@ -57,15 +81,6 @@ def _bleeder(board: Board, discharge: Discharge, readings: Sequence[Reading]) ->
     if ratio > RAISED:
         return [Finding("bleeder-open", 1.0, {**figures, "read_ohm": value})]
     return [Finding("bleeder-low", 1.0, {**figures, "read_ohm": value})] if ratio < 1.0 / RAISED else []
-
-
-def bleeder_fault_chance(board: Board, readings: Sequence[Reading]) -> float:
-    """Chance that the bleeder is open or raised [1]: as latent as on other boards until it is read; 0 without one."""
-    if board.bleeder is None:
-        return 0.0
-    if any(reading.what == "bleeder-resistance" for reading in readings):
-        return 0.0
-    return LATENT_BLEEDER
 
 
 def _discharge(board: Board, discharge: Discharge) -> list[Finding]:

@@ -1,0 +1,137 @@
+"""The one door to the verdict: `assess(case)` gives everything the tool can say about a case as plain data.
+
+Command line and screens call this and grow no copy of it.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Sequence
+
+import numpy as np
+
+from benchtool.board import Board
+from benchtool.case import Case
+from benchtool.catalogue.cautions import cautions
+from benchtool.catalogue.shows import SHOWS
+from benchtool.diagnosis.checks import next_checks
+from benchtool.diagnosis.disagreement import disagreements
+from benchtool.diagnosis.effective import effective_of
+from benchtool.diagnosis.evidence import because, fails_to_run
+from benchtool.diagnosis.posterior import Posterior, posterior_of
+from benchtool.diagnosis.safety import safety_findings
+from benchtool.observed import Reading
+from benchtool.physics.bench import Bench
+from benchtool.physics.budget import agreed, budget_of, regulating
+from benchtool.physics.laws import Array
+from benchtool.physics.ripple import UNCERTAIN
+from benchtool.physics.settled import Settled
+from benchtool.physics.shape import not_computed, shape_of
+from benchtool.physics.specimens import as_marked, population
+from benchtool.physics.stress import mains_power
+from benchtool.result import Assessment, RailState, State, Suspect
+
+BAND_DRAWN = 512
+"""Healthy boards behind the bands of the states table."""
+BAND = (2.5, 97.5)
+RMS_OF_TRIANGLE = float(np.sqrt(12.0))
+"""Peak to peak over RMS of a triangle, the form of ripple that is estimated."""
+
+
+def assess(case: Case) -> Assessment:
+    """The verdict on `case`. A valid case always gets one, whatever was read on it."""
+    board, readings = case.board, case.readings
+    standing, safety = cautions(board), safety_findings(board, readings)
+    missing = not_computed(shape_of(board))
+    if missing:
+        cannot = f"This board has {' and '.join(missing)}: benchtool cannot compute that yet."
+        return Assessment(case=case, cautions=standing, safety=safety, cannot=cannot)
+    posterior = posterior_of(board, case.meter, readings)
+    return Assessment(
+        case=case,
+        cautions=standing,
+        safety=safety,
+        states=states_of(board, readings),
+        budget=budget_of(board),
+        effective=effective_of(board, case.meter, readings),
+        suspects=_suspects(posterior),
+        disagreements=disagreements(posterior),
+        next_checks=next_checks(posterior, [reading.check for reading in readings]),
+        unused=tuple(reading for reading in readings if reading.what not in SHOWS and reading.what != "look"),
+    )
+
+
+def states_of(board: Board, readings: Sequence[Reading]) -> tuple[State, ...]:
+    """The board as marked: all switched loads off, all on, then every state a reading was taken in, each once."""
+    marked, healthy = Bench(as_marked(board)), Bench(population(board, BAND_DRAWN))
+    return tuple(_state(board, on, marked, healthy) for on in _states_wanted(board, readings))
+
+
+def _states_wanted(board: Board, readings: Sequence[Reading]) -> Iterator[tuple[str, ...]]:
+    wanted = [(), board.switched_loads(), *(reading.on for reading in readings if reading.on is not None)]
+    seen: set[frozenset[str]] = set()
+    for on in wanted:
+        if frozenset(on) not in seen:
+            seen.add(frozenset(on))
+            yield on
+
+
+def _state(board: Board, on: tuple[str, ...], marked: Bench, healthy: Bench) -> State:
+    settled, band = marked.settled(on), healthy.settled(on)
+    power = mains_power(settled)
+    known = bool(settled.converged.all())
+
+    def figure(values: Array) -> float | None:
+        return agreed(values) if known else None
+
+    return State(
+        on=on,
+        supply_current=figure(settled.supply_current),
+        line_current=figure(settled.line_current),
+        inrush_voltage=figure(power.inrush_voltage),
+        inrush_power=figure(power.inrush_power),
+        dropper_voltage=figure(settled.dropper_voltage),
+        dropper_dc=figure(settled.dropper_dc),
+        apparent_power=figure(power.apparent),
+        real_power=figure(power.real),
+        power_factor=figure(power.factor),
+        rails=tuple(_rail_state(board, index, settled, band) for index in range(len(board.rails))),
+    )
+
+
+def _rail_state(board: Board, index: int, settled: Settled, band: Settled) -> RailState:
+    ripple = agreed(settled.ripple_pp[index])
+    solved = band.rail_voltage[index][band.converged]
+    low, high = np.percentile(solved, BAND) if solved.size else (None, None)
+    regulates = regulating(settled, index)
+    same = regulates is not None and bool(np.all(regulates == regulates[0]))
+    has_zener = settled.specimens.shape.rails[index].has_zener
+    return RailState(
+        name=board.rails[index].name,
+        voltage=agreed(settled.rail_voltage[index]) if settled.converged.all() else None,
+        voltage_low=None if low is None else float(low),
+        voltage_high=None if high is None else float(high),
+        ripple_pp=ripple,
+        ripple_pp_low=None if ripple is None else ripple * (1.0 - UNCERTAIN),
+        ripple_pp_high=None if ripple is None else ripple * (1.0 + UNCERTAIN),
+        ripple_rms=None if ripple is None else ripple / RMS_OF_TRIANGLE,
+        regulating=bool(regulates[0]) if regulates is not None and same else None,
+        zener_current=agreed(settled.zener_current[index]) if has_zener else None,
+        zener_power=agreed(settled.zener_power[index]) if has_zener else None,
+    )
+
+
+def _suspects(posterior: Posterior) -> tuple[Suspect, ...]:
+    """Every hypothesis and `unexplained`, the most probable first."""
+    board, meter, readings = posterior.board, posterior.meter, posterior.readings
+    healthy = next(item for item in posterior.evidence if not item.hypothesis.faults)
+    suspects = [
+        Suspect(
+            hypothesis=item.hypothesis,
+            probability=float(probability),
+            explains_complaint=bool(item.hypothesis.faults) and fails_to_run(item, board),
+            because=because(item, healthy, board, meter, readings),
+        )
+        for item, probability in zip(posterior.evidence, posterior.probabilities, strict=True)
+    ]
+    suspects.append(Suspect(None, posterior.unexplained, explains_complaint=False))
+    return tuple(sorted(suspects, key=lambda suspect: -suspect.probability))

@@ -1,0 +1,43 @@
+"""The cautions that stand on every output, with this board's own volts and seconds in them.
+
+Common practice; they defer to local codes and licensed practice. No sentence here, or anywhere, promises that something may be
+touched: they say what to measure and the limit it must be under.
+"""
+
+from __future__ import annotations
+
+from benchtool.board import Board
+from benchtool.physics import constants as known
+from benchtool.physics.stress import Discharge, discharge_of
+from benchtool.quantities import show, show_up
+
+DEFERS = "Local codes and licensed practice come first."
+
+
+def cautions(board: Board, *, ascii: bool = False) -> tuple[str, ...]:
+    """The standing cautions for `board`, isolation first, then discharge. Times are rounded up."""
+    discharge = discharge_of(board)
+    mains = show(board.mains.voltage * (1.0 + board.mains.variation), "V", ascii=ascii)
+    dead = show(known.DEAD_VOLTS, "V", ascii=ascii)
+    return (
+        f"NOT ISOLATED: every point of this board, common included, can be at {mains} to earth. Power it on the bench only "
+        "through an isolating transformer, with no earthed instrument on it; isolated is not shock-free, two points still kill.",
+        f"STORED CHARGE: {_stored(discharge, ascii)} Unplug, {_wait(discharge, ascii)}discharge the dropper and every reservoir "
+        f"through 10 k{'ohm' if ascii else 'Ω'}, then measure on a DC range: each of them and the plug pins must be under {dead}.",
+        DEFERS,
+    )
+
+
+def _stored(discharge: Discharge, ascii: bool) -> str:
+    if discharge.capacitance is None and discharge.energy is None and not discharge.limited:
+        return "reservoirs stay charged after unplugging."
+    volts = show_up(discharge.start, "V", digits=3, ascii=ascii)
+    if discharge.to_limit is None:
+        return f"the dropper may hold {volts} for hours; nothing known empties it."
+    limit = show(known.PLUG_LIMIT_VOLTS, "V", ascii=ascii)
+    seconds = show_up(discharge.to_limit, "s", ascii=ascii)
+    return f"the dropper may hold {volts} after unplugging; by this supply alone it falls to {limit} in up to {seconds}."
+
+
+def _wait(discharge: Discharge, ascii: bool) -> str:
+    return "" if discharge.wait is None else f"wait {show_up(discharge.wait, 's', digits=3, ascii=ascii)}, "

@@ -1,0 +1,285 @@
+"""The verdict as plain data: frozen records, and the machine-readable form that the case format fixes."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from benchtool.case import Case
+from benchtool.catalogue.faults import UNEXPLAINED
+from benchtool.catalogue.readings import READING_KINDS
+from benchtool.diagnosis.checks import NextCheck
+from benchtool.diagnosis.disagreement import Disagreement
+from benchtool.diagnosis.effective import Effective
+from benchtool.diagnosis.evidence import Because, Expected
+from benchtool.diagnosis.hypotheses import Hypothesis, Struck
+from benchtool.diagnosis.safety import Finding
+from benchtool.observed import Check, Reading
+from benchtool.physics.budget import Budget
+from benchtool.quantities import show, show_range
+
+FORMAT = 1
+
+Plain = dict[str, object]
+
+
+@dataclass(frozen=True, slots=True)
+class RailState:
+    """One rail in one state, as marked [V, A, W]; low and high: the 95 % band of healthy boards. None: cannot be known.
+
+    The ripple is an estimate and carries its own low and high.
+    """
+
+    name: str
+    voltage: float | None
+    voltage_low: float | None
+    voltage_high: float | None
+    ripple_pp: float | None
+    ripple_pp_low: float | None
+    ripple_pp_high: float | None
+    ripple_rms: float | None
+    regulating: bool | None
+    zener_current: float | None
+    zener_power: float | None
+
+    def as_dict(self) -> Plain:
+        """With units in the keys."""
+        return {
+            "name": self.name,
+            "voltage_V": self.voltage,
+            "voltage_low_V": self.voltage_low,
+            "voltage_high_V": self.voltage_high,
+            "ripple_pp_V": self.ripple_pp,
+            "ripple_pp_low_V": self.ripple_pp_low,
+            "ripple_pp_high_V": self.ripple_pp_high,
+            "ripple_rms_V": self.ripple_rms,
+            "regulating": self.regulating,
+            "zener_current_A": self.zener_current,
+            "zener_power_W": self.zener_power,
+        }
+
+
+@dataclass(frozen=True, slots=True)
+class State:
+    """The board as marked in one switched state [A, V, W, VA]."""
+
+    on: tuple[str, ...]
+    supply_current: float | None
+    line_current: float | None
+    inrush_voltage: float | None
+    inrush_power: float | None
+    dropper_voltage: float | None
+    dropper_dc: float | None
+    apparent_power: float | None
+    real_power: float | None
+    power_factor: float | None
+    rails: tuple[RailState, ...]
+
+    def as_dict(self) -> Plain:
+        """With units in the keys."""
+        return {
+            "on": list(self.on),
+            "supply_current_A": self.supply_current,
+            "line_current_A": self.line_current,
+            "inrush_voltage_V": self.inrush_voltage,
+            "dropper_voltage_V": self.dropper_voltage,
+            "dropper_dc_V": self.dropper_dc,
+            "inrush_power_W": self.inrush_power,
+            "apparent_power_VA": self.apparent_power,
+            "real_power_W": self.real_power,
+            "power_factor": self.power_factor,
+            "rails": [rail.as_dict() for rail in self.rails],
+        }
+
+
+@dataclass(frozen=True, slots=True)
+class Suspect:
+    """Something that may be wrong, how likely, and why; without a hypothesis it is `unexplained`."""
+
+    hypothesis: Hypothesis | None
+    probability: float
+    explains_complaint: bool
+    because: tuple[Because, ...] = ()
+
+    @property
+    def fault(self) -> str:
+        """The fault's name; `unexplained` where no fault accounts for the readings."""
+        return UNEXPLAINED if self.hypothesis is None else self.hypothesis.name
+
+    @property
+    def label(self) -> str:
+        """The suspect in words."""
+        if self.hypothesis is None:
+            return "unexplained: a reading in doubt, or several faults"
+        if not self.hypothesis.faults:
+            return "no fault in this supply"
+        return ", with ".join(struck.fault.label_at(struck.place) for struck in self.hypothesis.faults)
+
+    def as_dict(self) -> Plain:
+        """With the other fault of a pair in `with`."""
+        faults = self.hypothesis.faults if self.hypothesis is not None else ()
+        cause = _struck(faults[0]) if faults else {"fault": self.fault, "rail": None, "load": None}
+        part = faults[0].fault.part_at(faults[0].place) if faults else None
+        return {
+            "fault": cause["fault"],
+            "part": part,
+            "rail": cause["rail"],
+            "load": cause["load"],
+            "with": _struck(faults[1]) if len(faults) > 1 else None,
+            "probability": self.probability,
+            "explains_complaint": self.explains_complaint,
+            "because": [_because(row) for row in self.because],
+        }
+
+
+def _struck(struck: Struck) -> Plain:
+    place = struck.place
+    return {
+        "fault": struck.fault.name,
+        "rail": place.name if place.rail is not None else None,
+        "load": place.name if place.load is not None else None,
+    }
+
+
+def _because(row: Because) -> Plain:
+    reading = row.reading
+    return {
+        "what": reading.what,
+        "rail": reading.rail,
+        "load": reading.load,
+        "on": None if reading.on is None else list(reading.on),
+        "read": read_text(reading),
+        "expected_if_this": expected_text(row.if_this, reading.what),
+        "expected_if_healthy": expected_text(row.if_healthy, reading.what),
+        "weight": row.weight,
+    }
+
+
+def read_text(reading: Reading, *, ascii: bool = False) -> str:
+    """What was read, in words: "182 nF, lifted"."""
+    unit = READING_KINDS[reading.what].unit
+    if isinstance(reading.value, float) and unit is not None:
+        text = show(reading.value, unit, digits=4, ascii=ascii)
+    elif isinstance(reading.value, tuple):
+        text = ", ".join(reading.value)
+    else:
+        text = str(reading.value)
+    remarks = [word for word, said in (("lifted", reading.lifted), ("warm", reading.when == "warm")) if said]
+    return ", ".join([text, *remarks])
+
+
+def expected_text(expected: Expected, what: str, *, ascii: bool = False) -> str:
+    """What should be read, in words: "612 nF to 748 nF", "open", "yes or no"."""
+    unit = READING_KINDS[what].unit
+    if expected.low is None or expected.high is None or unit is None:
+        return " or ".join(expected.words)
+    return show_range(expected.low, expected.high, unit, ascii=ascii)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Assessment:
+    """Everything said about one case. Where the physics cannot compute the board, `cannot` says so and the rest is empty."""
+
+    case: Case
+    cautions: tuple[str, ...]
+    safety: tuple[Finding, ...]
+    cannot: str | None = None
+    states: tuple[State, ...] = ()
+    budget: Budget | None = None
+    effective: Effective | None = None
+    suspects: tuple[Suspect, ...] = ()
+    disagreements: tuple[Disagreement, ...] = ()
+    next_checks: tuple[NextCheck, ...] = ()
+    unused: tuple[Reading, ...] = ()
+
+    def as_dict(self) -> Plain:
+        """The machine-readable result: SI units named in the keys, numbers not rounded, None where nothing can be known."""
+        return {
+            "format": FORMAT,
+            "case": self.case.ticket.number,
+            "cannot": self.cannot,
+            "states": [state.as_dict() for state in self.states],
+            "budget": None if self.budget is None else _budget(self.budget),
+            "effective": None if self.effective is None else _effective(self.effective),
+            "suspects": [suspect.as_dict() for suspect in self.suspects],
+            "disagreements": [_disagreement(item) for item in self.disagreements],
+            "next_checks": [_next_check(item) for item in self.next_checks],
+            "unused_readings": [_check(reading) for reading in self.unused],
+            "safety": [_finding(finding) for finding in self.safety],
+            "cautions": list(self.cautions),
+        }
+
+
+def _budget(budget: Budget) -> Plain:
+    return {
+        "on": list(budget.on),
+        "available_A": budget.available,
+        "available_low_A": budget.available_low,
+        "available_high_A": budget.available_high,
+        "demand_A": budget.demand,
+        "margin_A": budget.margin,
+        "dropout_capacitance_F": budget.dropout_capacitance,
+        "rule_of_thumb_A": budget.rule_of_thumb,
+    }
+
+
+def _effective(effective: Effective) -> Plain:
+    return {
+        "capacitance_F": effective.capacitance,
+        "capacitance_low_F": effective.capacitance_low,
+        "capacitance_high_F": effective.capacitance_high,
+        "current_A": effective.current,
+        "current_low_A": effective.current_low,
+        "current_high_A": effective.current_high,
+        "from": [_check(reading) for reading in effective.readings],
+    }
+
+
+def _check(check: Check) -> Plain:
+    plain: Plain = {"what": check.what}
+    if check.rail is not None:
+        plain["rail"] = check.rail
+    if check.load is not None:
+        plain["load"] = check.load
+    if check.on is not None:
+        plain["on"] = list(check.on)
+    return plain
+
+
+def _next_check(item: NextCheck) -> Plain:
+    check = item.check
+    return {
+        "what": check.what,
+        "rail": check.rail,
+        "load": check.load,
+        "on": None if check.on is None else list(check.on),
+        "lifted": check.lifted if check.what == "dropper-capacitance" else None,
+        "when": None if item.condition == "dead" else check.when,
+        "clamp_A": check.clamp,
+        "limit_V": check.limit,
+        "condition": item.condition,
+        "gain_bits": item.gain,
+        "minutes": item.minutes,
+    }
+
+
+def _disagreement(item: Disagreement) -> Plain:
+    return {
+        "first": {**_check(item.first), "read": read_text(item.first)},
+        "second": {**_check(item.second), "read": read_text(item.second)},
+        "first_implies_for_second": None if item.implied is None else list(item.implied),
+        "sentence": disagreement_sentence(item),
+    }
+
+
+def disagreement_sentence(item: Disagreement, *, ascii: bool = False) -> str:
+    """What the one reading implies for the other, in words."""
+    unit = READING_KINDS[item.second.what].unit
+    first, second = read_text(item.first, ascii=ascii), read_text(item.second, ascii=ascii)
+    if item.implied is None or unit is None:
+        return f"{first} and {second} do not go together with any single fault"
+    implied = show_range(*item.implied, unit, ascii=ascii)
+    return f"{first} would mean {implied} where {second} was read"
+
+
+def _finding(finding: Finding) -> Plain:
+    return {"fault": finding.fault, "probability": finding.probability, "sentence": finding.sentence()}
