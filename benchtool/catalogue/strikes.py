@@ -29,12 +29,16 @@ class Place:
 
 @dataclass(frozen=True, slots=True)
 class Scene:
-    """What a strike needs to know: the board, its normal load [A], the place, and the severity (n,) evenly over 0 to 1."""
+    """What a strike needs to know: the board, its normal load [A], the place, and the severity (n,) evenly over 0 to 1.
+
+    `other` is a second such coordinate, for faults that change two things independently.
+    """
 
     board: Board
     normal_load: float
     place: Place
     severity: Array
+    other: Array
 
     @property
     def index(self) -> int:
@@ -53,9 +57,9 @@ class Scene:
 Strike = Callable[[Specimens, Scene], Specimens]
 
 
-def scene_of(board: Board, place: Place, severity: Array) -> Scene:
+def scene_of(board: Board, place: Place, severity: Array, other: Array) -> Scene:
     """The scene of a fault at `place`."""
-    return Scene(board, normal_load(board), place, severity)
+    return Scene(board, normal_load(board), place, severity, other)
 
 
 def _row(specimens: Specimens, scene: Scene, field: str, values: Array | float) -> Specimens:
@@ -153,8 +157,8 @@ def zener_low(specimens: Specimens, scene: Scene) -> Specimens:
 
 
 def reservoir_dried(specimens: Specimens, scene: Scene) -> Specimens:
-    """0.5 to 40 % of its capacitance, with 0.5 to 20 ohm more; the drier, the more."""
-    left, more = scene.by_decades(0.005, 0.40), 20.0 * (0.5 / 20.0) ** scene.severity
+    """0.5 to 40 % of its capacitance, with 0.5 to 20 ohm more."""
+    left, more = scene.by_decades(0.005, 0.40), 0.5 * (20.0 / 0.5) ** scene.other
     struck = _row(specimens, scene, "reservoir", specimens.reservoir[scene.index] * left)
     return _row(struck, scene, "esr", specimens.esr[scene.index] + more)
 
@@ -191,8 +195,11 @@ def feed_short(specimens: Specimens, scene: Scene) -> Specimens:
 
 
 def load_excess(specimens: Specimens, scene: Scene) -> Specimens:
-    """Draws 0.5 to 4 times the board's normal load beyond its rating, as a resistor would."""
+    """Draws 0.5 to 4 times the board's normal load beyond its rating: a current load by its own law, others as a resistor."""
     load = scene.board.loads[scene.index]
+    if load.kind == "current":
+        more = scene.by_decades(0.5, 4.0) * scene.normal_load
+        return _row(specimens, scene, "load_current", specimens.load_current[scene.index] + more)
     upper = nominal_voltage(scene.board, scene.board.rail(load.rail)) or 12.0
     lower = 0.0
     if load.returns_to != "common":

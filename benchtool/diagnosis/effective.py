@@ -12,9 +12,9 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from benchtool.board import Board
+from benchtool.board import Board, nominal_voltage
 from benchtool.catalogue.readings import READING_KINDS
-from benchtool.catalogue.shows import SHOWS
+from benchtool.catalogue.shows import LINE_ERROR, RAIL_ERROR, SHOWS
 from benchtool.diagnosis.likelihood import accuracy_of
 from benchtool.diagnosis.posterior import reading_population
 from benchtool.observed import Check, Meter, Reading
@@ -33,6 +33,8 @@ from benchtool.physics.specimens import Specimens, as_marked
 DRAWN = 256
 LOW, HIGH = 2.5, 97.5
 """Percent points of a 95 % band."""
+BARELY = 2.0
+"""A supply under this many times what the bleeder alone brings cannot be told from one without a dropper."""
 BY_LINE = ("line-current", "inrush-voltage")
 """Readings that tell the dropper's current on the mains side."""
 
@@ -67,6 +69,23 @@ def effective_of(board: Board, meter: Meter, readings: Sequence[Reading]) -> Eff
     return max(bounds, key=lambda bound: bound.current_low or 0.0, default=Effective())
 
 
+ROUGH_PP, ROUGH_RMS, ROUGH_RESERVOIR = 0.10, 0.03, 0.5
+"""Ripple over the rail's nominal voltage, reservoir over its mark: beyond them the mean of the first rail sags by itself."""
+
+
+def _rough(board: Board, reading: Reading) -> bool:
+    """Whether this reading says that the first rail is not smooth, so that its mean tells only the least supply."""
+    first = board.rails[0]
+    volts = nominal_voltage(board, first)
+    if reading.rail != first.name or not isinstance(reading.value, float):
+        return False
+    if reading.what == "reservoir-capacitance" and first.reservoir is not None:
+        mark = first.reservoir.capacitance
+        return isinstance(mark, float) and reading.value < ROUGH_RESERVOIR * mark
+    limits = {"rail-ripple": ROUGH_PP, "rail-ripple-rms": ROUGH_RMS}
+    return volts is not None and reading.what in limits and reading.value > limits[reading.what] * volts
+
+
 class _Solver:
     """The healthy spread of the board with everything but the dropper, and the board as marked."""
 
@@ -75,20 +94,30 @@ class _Solver:
         self.spread = reading_population(board, meter, readings, DRAWN)
         self.marked = as_marked(board)
         self.bench = Bench(self.spread)
+        self.smooth = not any(_rough(board, reading) for reading in readings)
 
     def figure(self, reading: Reading) -> Effective | None:
         """What this reading says outright, or None where it says nothing or only a bound."""
         if not isinstance(reading.value, float):
             return None
         if reading.what == "rail-voltage" and self._on_first_rail(reading):
-            return self._by_rail(reading, reading.value) if self._band(reading) == "below" else None
+            low = self._band(reading) == "below" and self.smooth
+            return self._by_rail(reading, reading.value) if low else None
         if reading.what in BY_LINE and self.board.dropper.kind == "capacitor":
             return self._by_line(reading, reading.value)
         return None
 
     def bound(self, reading: Reading) -> Effective | None:
         """The least supply that holds the first rail where this reading found it regulating."""
-        if reading.what != "rail-voltage" or not self._on_first_rail(reading) or self._band(reading) != "within":
+        if reading.what != "rail-voltage" or not self._on_first_rail(reading):
+            return None
+        band = self._band(reading)
+        if band == "below" and isinstance(reading.value, float):
+            whole = self._by_rail(reading, reading.value)
+            return Effective(
+                capacitance_low=whole.capacitance_low, current_low=whole.current_low, readings=whole.readings
+            )
+        if band != "within":
             return None
         on, warm = reading.on or (), reading.when == "warm"
         if self.board.dropper.kind != "capacitor" or self.board.rails[0].zener is None:
@@ -118,9 +147,10 @@ class _Solver:
         return float(two_sigma(value, accuracy.relative, accuracy.floor))
 
     def _read(self, reading: Reading, value: float) -> Array:
-        """The true value behind the reading, spread over the meter's accuracy, (n,)."""
-        even = apart(METER, DRAWN)
-        return np.asarray(value + self._two_sigma(reading.check, value) * (2.0 * even - 1.0))
+        """The true value behind the reading, spread over the two sigma of meter and physics, (n,)."""
+        share = LINE_ERROR if reading.what in BY_LINE else RAIL_ERROR
+        limit = np.hypot(self._two_sigma(reading.check, value), 2.0 * share * abs(value))
+        return np.asarray(np.maximum(value + limit * (2.0 * apart(METER, DRAWN) - 1.0), 0.0))
 
     def _by_rail(self, reading: Reading, value: float) -> Effective:
         on, warm = reading.on or (), reading.when == "warm"
@@ -146,11 +176,19 @@ class _Solver:
         if _point(capacitance, LOW) is None:
             return None
         at_mark, nominal = solve(self.marked, np.full(self.marked.count, value))
-        return _effective(reading, at_mark, capacitance, nominal, current)
+        found = _effective(reading, at_mark, capacitance, nominal, current)
+        if found.current is None or found.current > BARELY * self._without_dropper(on, warm):
+            return found
+        return replace(found, capacitance=None, capacitance_low=0.0)
+
+    def _without_dropper(self, on: tuple[str, ...], warm: bool) -> float:
+        """The current that the bleeder alone would bring into the first rail of the board as marked [A]."""
+        bare = replace(self.marked, capacitance=1e-6 * self.marked.capacitance)
+        return float(np.mean(settle(bare, on, warm=warm).supply_current))
 
 
 def _with(specimens: Specimens, capacitance: Array) -> Specimens:
-    return replace(specimens, capacitance=np.where(np.isfinite(capacitance), capacitance, specimens.capacitance))
+    return replace(specimens, capacitance=np.where(capacitance > 0.0, capacitance, 1e-6 * specimens.capacitance))
 
 
 def _effective(reading: Reading, at_mark: Array, capacitance: Array, nominal: Array, current: Array) -> Effective:

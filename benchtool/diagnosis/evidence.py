@@ -55,7 +55,7 @@ def expected(bench: Bench, board: Board, check: Check, meter: Meter) -> Expected
         if flag is not None and word in READING_KINDS[check.what].words and float(np.mean(flag)) > MOSTLY:
             return Expected(words=(word,))
     values = _as_metered(shown, accuracy_of(READING_KINDS[check.what], meter))
-    low, high = np.percentile(values, BAND)
+    low, high = np.maximum(np.percentile(values, BAND), READING_KINDS[check.what].low)
     return Expected(low=float(low), high=float(high))
 
 

@@ -22,14 +22,14 @@ from benchtool.observed import Meter, Reading
 from benchtool.physics import constants as known
 from benchtool.physics.bench import Bench
 from benchtool.physics.laws import Array, two_sigma
-from benchtool.physics.sequence import SECOND_SEVERITY, SEVERITY, apart
+from benchtool.physics.sequence import OTHER_SEVERITY, SECOND_SEVERITY, SEVERITY, apart
 from benchtool.physics.specimens import Specimens, concatenate, population
 
 DRAWN = 384
 """Specimens a hypothesis."""
 REDRAWN = 1024
 LEADS_FROM = 0.005
-"""Probability from which a hypothesis is drawn again around the severities that count."""
+"""Share of all that is explained from which a hypothesis is drawn again around the severities that count."""
 COUNTS_FROM = 1e-3
 """Share of the best specimen's likelihood from which a severity counts."""
 
@@ -114,8 +114,9 @@ def posterior_of(board: Board, meter: Meter, readings: Sequence[Reading]) -> Pos
     judge = _Judge(board, meter, taken)
     evidence = judge.first()
     probabilities, _ = _weigh(judge, evidence)
+    leads = LEADS_FROM * probabilities.sum()
     evidence = [
-        judge.again(item) if probability > LEADS_FROM and item.hypothesis.faults else item
+        judge.again(item) if probability > leads and item.hypothesis.faults else item
         for item, probability in zip(evidence, probabilities, strict=True)
     ]
     probabilities, unexplained = _weigh(judge, evidence)
@@ -174,7 +175,8 @@ class _Judge:
                 severity = low + (high - low) * apart(SEVERITY, healthy.count)
             else:
                 severity = apart(SECOND_SEVERITY, healthy.count)
-            specimens = struck.fault.strike(specimens, scene_of(self.board, struck.place, severity))
+            scene = scene_of(self.board, struck.place, severity, apart(OTHER_SEVERITY, healthy.count))
+            specimens = struck.fault.strike(specimens, scene)
         return specimens
 
     def _densities(self, bench: Bench) -> Array:

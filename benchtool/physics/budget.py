@@ -152,7 +152,8 @@ BISECTIONS = 22
 
 
 def capacitance_giving(specimens: Specimens, on: tuple[str, ...], warm: bool, shows: Shows, target: Array) -> Array:
-    """The dropper [F] at which each specimen's `shows` reaches `target`, (n,); NaN where none from 1/10000 to 10 of its own does.
+    """The dropper [F] at which each specimen's `shows` reaches `target`, (n,); nil where it does without, NaN where 10 of its own
+    are not enough.
 
     Bisection in the logarithm: everything asked for here rises with the dropper. Zeners stay cold: at the edge of regulation
     they carry next to nothing.
@@ -164,8 +165,8 @@ def capacitance_giving(specimens: Specimens, on: tuple[str, ...], warm: bool, sh
         middle = 0.5 * (low + high)
         reached = shows(settle(replace(cold, capacitance=np.exp(middle)), on, warm=warm)) >= target
         low, high = np.where(reached, low, middle), np.where(reached, middle, high)
-    inside = (low > lowest) & (high < highest)
-    return np.where(inside, np.exp(0.5 * (low + high)), np.nan)
+    found = np.where(low > lowest, np.exp(0.5 * (low + high)), 0.0)
+    return np.where(high < highest, found, np.nan)
 
 
 def dropout_capacitance(specimens: Specimens, on: tuple[str, ...], *, warm: bool = False) -> Array:

@@ -22,7 +22,7 @@ def _primes(count: int) -> tuple[int, ...]:
 
 PART_COORDINATES = 256
 """Coordinates for the parts of a board: more than the largest board a case file accepts has."""
-SEVERITY, SECOND_SEVERITY, METER, METER_WINDOW, METER_BLUR = range(5)
+SEVERITY, SECOND_SEVERITY, OTHER_SEVERITY, METER, METER_WINDOW, METER_BLUR = range(6)
 """Coordinates for what is no part: how bad a fault is, and what depends on the meter."""
 
 
