@@ -23,7 +23,7 @@ from benchtool.physics.specimens import Junction, Specimens, Switch
 RAIL_ERROR, RAIL_ERROR_FLOOR = 0.008, 0.05
 """One sigma of the mean-value physics on a smooth rail: share, and volts."""
 RIPPLE_ERROR = 0.35
-LINE_ERROR = 0.01
+LINE_ERROR = 0.015
 PULLED_DOWN = 10.0
 """A rail whose ripple exceeds this share of its mean, in percent, is not smooth."""
 RAMP_SECONDS = 0.3

@@ -247,7 +247,7 @@ def _settled(network: Network, cold: Specimens, rails: Array, converged: Array) 
         ripple_pp=ripple,
         zener_current=zener_current,
         zener_power=zener_power,
-        supply_current=supply,
+        supply_current=supply - zener_current[0] if shape.zener_at_node else supply,
         line_current=side.line_current,
         dropper_voltage=side.dropper_voltage,
         dropper_dc=side.dropper_dc,

@@ -33,7 +33,7 @@ def mains_power(settled: Settled) -> MainsPower:
     series = np.where(np.isfinite(specimens.series_resistance), specimens.series_resistance, 0.0)
     across = settled.dropper_voltage**2 + settled.dropper_dc**2
     loss = 2.0 * np.pi * specimens.frequency * specimens.capacitance * known.DROPPER_LOSS_TANGENT
-    rectified = settled.supply_current * (settled.rail_voltage[0] + 2.0 * known.DIODE_DROP)
+    rectified = settled.rectified_current * (settled.rail_voltage[0] + 2.0 * known.DIODE_DROP)
     real = rectified + current**2 * series + across / specimens.parallel_resistance + loss * settled.dropper_voltage**2
     apparent = specimens.mains * current
     factor = real / np.maximum(apparent, 1e-12)

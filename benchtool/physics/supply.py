@@ -131,7 +131,7 @@ def mains_side(feed: Feed, rail: Array) -> MainsSide:
 def _standing_dc(feed: Feed, rail: Array) -> Array:
     """Mean voltage over the dropper [V], magnitude: the crest where it blocks, half the lopsidedness of a half-wave swing."""
     specimens = feed.specimens
-    has_capacitor = specimens.capacitance > 0.0
-    lopsided = np.zeros_like(rail) if specimens.shape.rectifier == "bridge" else np.maximum(rail, 0.0) / 2.0
-    standing = np.where(feed.blocked_by_dc, np.maximum(specimens.crest - _threshold(specimens, rail), 0.0), lopsided)
-    return np.where(has_capacitor, standing, 0.0)
+    both_ways = (specimens.shape.rectifier == "bridge") & (specimens.junction != Junction.SERIES_SHORT)
+    lopsided = np.where(both_ways, 0.0, np.maximum(rail, 0.0) / 2.0)
+    charged = np.where(specimens.capacitance > 0.0, np.maximum(specimens.crest - _threshold(specimens, rail), 0.0), 0.0)
+    return np.where(feed.blocked_by_dc, charged, lopsided)

@@ -177,7 +177,10 @@ UNITS |= {"shunt_capacitance": "F", "feed_resistance": "ohm", "forward_voltage":
 
 
 def to_case_text(circuit: Circuit) -> str:
-    """Return the circuit's board as a case file of format 1; a `fault` entry is not in it."""
+    """Return the circuit's board as a case file of format 1; a `fault` entry is not in it.
+
+    Coils are given a nominal voltage, which has no bearing on the electrical figures.
+    """
     board = dict(circuit["board"])
     lines = ["format = 1", "", "[mains]", *_table(circuit["mains"]), "", "[board]"]
     lines += [f'name = {json.dumps(circuit.get("name", "board"))}', f'rectifier = "{board.pop("rectifier")}"']
@@ -186,6 +189,7 @@ def to_case_text(circuit: Circuit) -> str:
     for key in ("rail", "load"):
         for item in board.get(key, []):
             lines += ["", f"[[board.{key}]]", *_table(item)]
+            lines += ['nominal_voltage = "12 V"'] if item.get("kind") == "coil" else []
     return "\n".join(lines) + "\n"
 
 
