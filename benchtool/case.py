@@ -6,7 +6,7 @@ import datetime
 from dataclasses import dataclass, field
 from typing import Annotated
 
-from benchtool.board import Board, Choice, Flag, Moment, Names, Quantity, Table, Tables, Text, Whole
+from benchtool.board import Board, Moment, Names, Quantity, Tables, Text, Whole
 from benchtool.observed import Accuracy, AccuracyOf, Meter, Reading, ReadingValue
 
 __all__ = ["Accuracy", "AccuracyOf", "Case", "Meter", "Reading", "ReadingValue", "Repair", "Replaced", "Safe", "Ticket"]

@@ -66,7 +66,7 @@ def specimen_of(circuit: dict[str, Any]) -> Specimens:
         },
     }
     index = board.rail_index(fault["rail"])
-    arrays = {}
+    arrays: dict[str, Any] = {}
     for name, value in changes[fault["fault"]](lambda name: getattr(specimens, name)[index]).items():
         arrays[name] = np.array(getattr(specimens, name))
         arrays[name][index] = value

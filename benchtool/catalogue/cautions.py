@@ -22,8 +22,9 @@ def cautions(board: Board, *, ascii: bool = False) -> tuple[str, ...]:
     return (
         f"NOT ISOLATED: every point of this board, common included, can be at {mains} to earth. Power it on the bench only "
         "through an isolating transformer, with no earthed instrument on it; isolated is not shock-free, two points still kill.",
-        f"STORED CHARGE: {_stored(discharge, ascii)} Unplug, {_wait(discharge, ascii)}discharge the dropper and every reservoir "
-        f"through 10 k{'ohm' if ascii else 'Ω'}, then measure on a DC range: each of them and the plug pins must be under {dead}.",
+        f"STORED CHARGE: {_stored(discharge, ascii)} Unplug, {_wait(discharge, ascii)}discharge the dropper and every "
+        f"reservoir through 10 k{'ohm' if ascii else 'Ω'}, then measure on a DC range: each of them and the plug pins must be "
+        f"under {dead}.",
         DEFERS,
     )
 

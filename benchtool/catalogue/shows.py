@@ -17,7 +17,7 @@ from benchtool.observed import Check
 from benchtool.physics import branches
 from benchtool.physics import constants as known
 from benchtool.physics.bench import Bench
-from benchtool.physics.laws import Array
+from benchtool.physics.laws import Array, Flags
 from benchtool.physics.specimens import Junction, Specimens, Switch
 
 RAIL_ERROR, RAIL_ERROR_FLOOR = 0.008, 0.05
@@ -41,8 +41,8 @@ class Shown:
 
     value: Array | None = None
     error: Array | float = 0.0
-    opened: Array | None = None
-    shorted: Array | None = None
+    opened: Flags | None = None
+    shorted: Flags | None = None
     chances: dict[str, Array] = field(default_factory=dict)
 
 
@@ -214,7 +214,7 @@ def _rectifier(bench: Bench, board: Board, check: Check) -> Shown:
     return _three_words(opened, shorted, ("good", "open", "short"))
 
 
-def _three_words(second: Array, third: Array, words: tuple[str, str, str]) -> Shown:
+def _three_words(second: Flags, third: Flags, words: tuple[str, str, str]) -> Shown:
     """Chances of three words, the first where neither flag is set."""
     doubt = (1.0 - SURE) / 2.0
     flags = (~second & ~third, second, third)
@@ -297,7 +297,7 @@ def _coil(bench: Bench, board: Board, check: Check) -> Shown:
 
 def _switch(bench: Bench, board: Board, check: Check) -> Shown:
     state = bench.specimens.switch[_load(board, check)]
-    return _three_words(state == Switch.OPEN, state == Switch.STUCK, ("good", "open", "short"))
+    return _three_words(np.asarray(state == Switch.OPEN), np.asarray(state == Switch.STUCK), ("good", "open", "short"))
 
 
 def _tap(bench: Bench, board: Board, check: Check) -> Shown:

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass, replace
+from typing import Any
 
 import numpy as np
 
@@ -66,7 +67,8 @@ def _row(specimens: Specimens, scene: Scene, field: str, values: Array | float) 
     """`field` with one rail's or load's row replaced."""
     array = np.array(getattr(specimens, field))
     array[scene.index] = values
-    return replace(specimens, **{field: array})
+    changed: dict[str, Any] = {field: array}
+    return replace(specimens, **changed)
 
 
 def _all(specimens: Specimens, value: float) -> Array:

@@ -18,7 +18,7 @@ from benchtool.catalogue.shows import SHOWS, Shown
 from benchtool.diagnosis.likelihood import LOGARITHMIC, SMALLEST, spread, word_chance
 from benchtool.diagnosis.posterior import ELSEWHERE, Posterior
 from benchtool.observed import Check, Meter
-from benchtool.physics.laws import Array
+from benchtool.physics.laws import Array, Flags
 from benchtool.physics.sequence import METER_BLUR, apart
 
 FIRST_LIVE_MINUTES = 5.0
@@ -154,7 +154,7 @@ def _number_table(shown: Sequence[Shown], shares: Sequence[Array], kind: Reading
     return np.array(rows)
 
 
-def _is_number(shown: Shown, kind: ReadingKind) -> Array:
+def _is_number(shown: Shown, kind: ReadingKind) -> Flags:
     assert shown.value is not None
     number = np.isfinite(shown.value)
     for flag, word in ((shown.opened, "open"), (shown.shorted, "short")):
@@ -179,7 +179,7 @@ def _blur(shown: Shown, kind: ReadingKind, meter: Meter) -> Array:
 
 
 def _resolution(
-    shown: Sequence[Shown], blurred: Sequence[Array], numbers: Sequence[Array], shares: Sequence[Array],
+    shown: Sequence[Shown], blurred: Sequence[Array], numbers: Sequence[Flags], shares: Sequence[Array],
     kind: ReadingKind, meter: Meter,
 ) -> float:
     """A typical sigma on the scale of the classes: the mean over all specimens' shares."""

@@ -136,7 +136,8 @@ class _Solver:
     def _band(self, reading: Reading) -> str:
         """Whether the reading lies below, within or above what healthy boards of this kind show."""
         shown = SHOWS[reading.what](self.bench, self.board, reading.check).value
-        assert shown is not None and isinstance(reading.value, float)
+        assert shown is not None
+        assert isinstance(reading.value, float)
         slack = self._two_sigma(reading.check, reading.value)
         if reading.value < np.percentile(shown, LOW) - slack:
             return "below"

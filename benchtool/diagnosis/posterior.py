@@ -197,7 +197,7 @@ class _Judge:
         return Evidence(hypothesis, bench, rows, level)
 
     def _log_mains(self, hypothesis: Hypothesis, volts: float) -> float:
-        """Mains are anywhere in their range, or with `mains-low` and `mains-high` anywhere in a band of the same width beyond it."""
+        """Mains are anywhere in their range; with `mains-low` and `mains-high` anywhere in a band beyond it."""
         nominal, variation = self.board.mains.voltage, self.board.mains.variation
         slack = float(two_sigma(volts, self.meter.ac_voltage.relative, self.meter.ac_voltage.floor))
         bands = {"mains-low": (0.70 - variation, 1.0 - variation), "mains-high": (1.0 + variation, 1.20 + variation)}

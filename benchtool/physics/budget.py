@@ -10,7 +10,7 @@ import numpy as np
 from benchtool.board import Board, nominal_voltage
 from benchtool.physics import constants as known
 from benchtool.physics import laws
-from benchtool.physics.laws import Array
+from benchtool.physics.laws import Array, Flags
 from benchtool.physics.mean_value import settle
 from benchtool.physics.settled import Settled
 from benchtool.physics.shape import TO_COMMON
@@ -135,9 +135,9 @@ def _needs(specimens: Specimens, rails: Array, index: int) -> Array:
 def _marked_draw(specimens: Specimens, number: int, voltage: Array) -> Array:
     kind = specimens.shape.loads[number].kind
     if kind == "current":
-        return specimens.load_current[number]
+        return np.asarray(specimens.load_current[number])
     over = specimens.load_forward[number] if kind == "led" else 0.0
-    return np.maximum(voltage - over, 0.0) / specimens.load_resistance[number]
+    return np.asarray(np.maximum(voltage - over, 0.0) / specimens.load_resistance[number])
 
 
 def normal_load(board: Board) -> float:
@@ -178,10 +178,10 @@ def dropout_capacitance(specimens: Specimens, on: tuple[str, ...], *, warm: bool
 def chain_current(settled: Settled, index: int) -> Array:
     """The least mean current [A] among the zeners that hold rail `index` over common, (n,)."""
     rails = settled.specimens.shape.rails
-    least = settled.zener_current[index]
+    least: Array = settled.zener_current[index]
     while rails[index].clamps_to != TO_COMMON:
         index = rails[index].clamps_to
-        least = np.minimum(least, settled.zener_current[index])
+        least = np.asarray(np.minimum(least, settled.zener_current[index]))
     return least
 
 
@@ -200,7 +200,7 @@ def back_solved_capacitance(specimens: Specimens, current: Array, first_rail: Ar
     )
 
 
-def regulating(settled: Settled, index: int) -> Array | None:
+def regulating(settled: Settled, index: int) -> Flags | None:
     """Whether rail `index` regulates: every zener between it and common carries 0.1 mA; None without one. Bool (n,)."""
     if not settled.specimens.shape.rails[index].has_zener:
         return None

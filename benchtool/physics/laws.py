@@ -7,26 +7,28 @@ input has to swing from one conduction to the next [V]: bridge V + 2·Vf; half-w
 from __future__ import annotations
 
 import numpy as np
-from numpy.typing import ArrayLike, NDArray
+from numpy.typing import NDArray
 
 from benchtool.physics import constants as known
 
 Array = NDArray[np.float64]
+Flags = NDArray[np.bool_]
+Number = float | Array
 
 
-def reactance(capacitance: ArrayLike, frequency: ArrayLike) -> Array:
+def reactance(capacitance: Number, frequency: Number) -> Array:
     """Reactance 1/(2πfC) [ohm] of `capacitance` [F] at `frequency` [Hz]. Definition."""
-    return 1.0 / (2.0 * np.pi * np.asarray(frequency) * np.asarray(capacitance, dtype=float))
+    return np.asarray(1.0 / (2.0 * np.pi * np.asarray(frequency) * np.asarray(capacitance, dtype=float)))
 
 
-def crest_factor_k(resistance: ArrayLike, capacitance: ArrayLike, frequency: ArrayLike) -> Array:
+def crest_factor_k(resistance: Number, capacitance: Number, frequency: Number) -> Array:
     """Share of the crest left behind a series `resistance` [ohm]: k = 1/√(1 + (2πfRC)²). Charge balance."""
     omega_tau = 2.0 * np.pi * np.asarray(frequency) * np.asarray(resistance) * np.asarray(capacitance)
     return np.asarray(1.0 / np.sqrt(1.0 + omega_tau**2))
 
 
 def capacitor_current(
-    crest: ArrayLike, frequency: ArrayLike, capacitance: ArrayLike, resistance: ArrayLike, half_swing: ArrayLike
+    crest: Number, frequency: Number, capacitance: Number, resistance: Number, half_swing: Number
 ) -> Array:
     """Mean current [A] that a capacitor dropper drives through a full-wave rectifier; half of it through a half-wave one.
 
@@ -37,11 +39,11 @@ def capacitor_current(
     conductance = 4.0 * np.asarray(frequency) * np.asarray(capacitance, dtype=float)
     k = crest_factor_k(resistance, capacitance, frequency)
     answered = conductance / np.hypot(1.0, conductance * np.asarray(resistance))
-    return np.maximum(conductance * k * np.asarray(crest) - answered * np.asarray(half_swing), 0.0)
+    return np.asarray(np.maximum(conductance * k * np.asarray(crest) - answered * np.asarray(half_swing), 0.0))
 
 
 def capacitance_for(
-    current: ArrayLike, crest: ArrayLike, frequency: ArrayLike, resistance: ArrayLike, half_swing: ArrayLike
+    current: Number, crest: Number, frequency: Number, resistance: Number, half_swing: Number
 ) -> Array:
     """The dropper [F] that drives the mean `current` [A] through a full-wave rectifier: `capacitor_current` turned round.
 
@@ -58,7 +60,7 @@ def capacitance_for(
     return np.asarray(capacitance)
 
 
-def resistor_current(crest: ArrayLike, resistance: ArrayLike, threshold: ArrayLike) -> Array:
+def resistor_current(crest: Number, resistance: Number, threshold: Number) -> Array:
     """Mean current [A] that a resistor dropper drives through a full-wave rectifier; half of it through a half-wave one.
 
     I = 2/(πR)·[crest·cos a − V'·(π/2 − a)], a = asin(V'/crest): the mean over the conduction angle, analytic.
@@ -71,13 +73,13 @@ def resistor_current(crest: ArrayLike, resistance: ArrayLike, threshold: ArrayLi
     return np.asarray(2.0 / (np.pi * np.asarray(resistance)) * drive)
 
 
-def conduction_start(crest: ArrayLike, half_swing: ArrayLike) -> Array:
+def conduction_start(crest: Number, half_swing: Number) -> Array:
     """Phase after the mains crest at which a capacitor dropper's rectifier conducts again [rad]; π where it never does."""
     ratio = np.asarray(half_swing) / np.maximum(np.asarray(crest, dtype=float), 1e-9)
     return np.asarray(np.arccos(np.clip(1.0 - 2.0 * ratio, -1.0, 1.0)))
 
 
-def capacitor_line_current(crest: ArrayLike, frequency: ArrayLike, capacitance: ArrayLike, half_swing: ArrayLike) -> Array:
+def capacitor_line_current(crest: Number, frequency: Number, capacitance: Number, half_swing: Number) -> Array:
     """RMS current [A] in the mains lead of a capacitor dropper; `crest` [V] is the crest that reaches it (k·crest).
 
     From the crest the current rests until the node has swung over, then follows ωC·crest·sin θ to the next crest: analytic.
@@ -87,7 +89,7 @@ def capacitor_line_current(crest: ArrayLike, frequency: ArrayLike, capacitance: 
     return np.asarray(peak * np.sqrt(np.maximum((np.pi - start) / 2.0 + np.sin(2.0 * start) / 4.0, 0.0) / np.pi))
 
 
-def capacitor_voltage(crest: ArrayLike, half_swing: ArrayLike) -> Array:
+def capacitor_voltage(crest: Number, half_swing: Number) -> Array:
     """RMS voltage [V] over a capacitor dropper without its standing DC: at rest for a while, then with the mains. Analytic."""
     crest, half_swing = np.asarray(crest, dtype=float), np.minimum(np.asarray(half_swing, dtype=float), crest)
     start = conduction_start(crest, half_swing)
@@ -97,7 +99,7 @@ def capacitor_voltage(crest: ArrayLike, half_swing: ArrayLike) -> Array:
     return np.asarray(np.sqrt(np.maximum(rest + moving + cross, 0.0) / np.pi))
 
 
-def resistor_line_current(crest: ArrayLike, resistance: ArrayLike, threshold: ArrayLike) -> Array:
+def resistor_line_current(crest: Number, resistance: Number, threshold: Number) -> Array:
     """RMS current [A] in the mains lead of a resistor dropper that conducts above `threshold` [V] both ways. Analytic."""
     crest = np.maximum(np.asarray(crest, dtype=float), 1e-9)
     ratio = np.clip(np.asarray(threshold) / crest, 0.0, 1.0)
@@ -108,7 +110,7 @@ def resistor_line_current(crest: ArrayLike, resistance: ArrayLike, threshold: Ar
 
 
 def rule_of_thumb_current(
-    mains: ArrayLike, frequency: ArrayLike, capacitance: ArrayLike, resistance: ArrayLike, zener: ArrayLike
+    mains: Number, frequency: Number, capacitance: Number, resistance: Number, zener: Number
 ) -> Array:
     """The half-wave current [A] as application notes state it: (√2·V − Vz) / [2·(Xc + R)], Microchip AN954 p. 2.
 
@@ -119,18 +121,18 @@ def rule_of_thumb_current(
     return np.asarray(drive / (2.0 * (reactance(capacitance, frequency) + np.asarray(resistance))))
 
 
-def discharge_voltage(start: ArrayLike, resistance: ArrayLike, capacitance: ArrayLike, seconds: ArrayLike) -> Array:
+def discharge_voltage(start: Number, resistance: Number, capacitance: Number, seconds: Number) -> Array:
     """Voltage [V] left after `seconds` [s] on `capacitance` [F] through `resistance` [ohm]: V0·exp(−t/RC)."""
     return np.asarray(start * np.exp(-np.asarray(seconds) / (np.asarray(resistance) * np.asarray(capacitance))))
 
 
-def discharge_time(start: ArrayLike, resistance: ArrayLike, capacitance: ArrayLike, limit: ArrayLike) -> Array:
+def discharge_time(start: Number, resistance: Number, capacitance: Number, limit: Number) -> Array:
     """Seconds [s] until `capacitance` [F] has fallen from `start` to `limit` [V] through `resistance` [ohm]: RC·ln(V0/Vlim)."""
     ratio = np.maximum(np.asarray(start) / np.asarray(limit), 1.0)
     return np.asarray(np.asarray(resistance) * np.asarray(capacitance) * np.log(ratio))
 
 
-def copper_ratio(celsius: ArrayLike) -> Array:
+def copper_ratio(celsius: Number) -> Array:
     """Resistance, and pull-in voltage, of a copper coil at `celsius` [degC] as a share of its value at 25 degC.
 
     0.003853 per kelvin at the 25 degC reference (relay makers' temperature notes).
@@ -138,9 +140,9 @@ def copper_ratio(celsius: ArrayLike) -> Array:
     return np.asarray(1.0 + known.COPPER_AT_25 * (np.asarray(celsius, dtype=float) - 25.0))
 
 
-def zener_temperature_share(voltage: ArrayLike) -> Array:
+def zener_temperature_share(voltage: Number) -> Array:
     """Change of a zener's voltage per kelvin as a share of itself [1/K], between the table's volts by straight lines."""
-    return np.interp(voltage, known.ZENER_TEMPERATURE_VOLTS, known.ZENER_TEMPERATURE_SHARE)
+    return np.asarray(np.interp(np.asarray(voltage, dtype=float), known.ZENER_TEMPERATURE_VOLTS, known.ZENER_TEMPERATURE_SHARE))
 
 
 def accuracy_band(value: float, relative: float, floor: float) -> tuple[float, float]:
@@ -149,7 +151,7 @@ def accuracy_band(value: float, relative: float, floor: float) -> tuple[float, f
     return value - limit, value + limit
 
 
-def two_sigma(value: ArrayLike, relative: float, floor: float) -> Array:
+def two_sigma(value: Number, relative: float, floor: float) -> Array:
     """A meter's two-sigma limit with the two terms as a root sum of squares, as they seldom fail together."""
     return np.hypot(relative * np.asarray(value, dtype=float), floor)
 

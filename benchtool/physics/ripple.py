@@ -9,8 +9,8 @@ from __future__ import annotations
 import numpy as np
 
 from benchtool.physics import constants as known
-from benchtool.physics.laws import Array
-from benchtool.physics.specimens import Specimens
+from benchtool.physics.laws import Array, Flags
+from benchtool.physics.specimens import Junction, Specimens
 
 UNCERTAIN = 0.35
 """Share by which the estimate may be off."""
@@ -26,9 +26,10 @@ def rests(specimens: Specimens) -> Array:
     return np.asarray(part / specimens.frequency)
 
 
-def full_wave(specimens: Specimens) -> Array:
+def full_wave(specimens: Specimens) -> Flags:
     """Where both half cycles charge the first rail; bool (n,)."""
-    return (specimens.shape.rectifier == "bridge") & (specimens.junction == 0)
+    both = specimens.shape.rectifier == "bridge"
+    return np.asarray(both & (specimens.junction == Junction.GOOD))
 
 
 def ripple_estimate(specimens: Specimens, rails: Array, supply: Array, zener_current: Array) -> Array:

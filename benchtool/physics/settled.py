@@ -13,8 +13,8 @@ class Settled:
     """Means over a mains cycle in one switched state. (n,) unless a first axis is named.
 
     rail_voltage (rails, n) [V]; ripple_pp (rails, n) [V]; zener_current (rails, n) [A], mean reverse; zener_power (rails, n)
-    [W]; supply_current [A] out of the rectifier into the first rail; line_current [A RMS]; dropper_voltage [V RMS]; dropper_dc [V];
-    load_voltage, load_current (loads, n) [V, A]; converged: whether this specimen's balance was met.
+    [W]; supply_current [A] out of the rectifier into the first rail; line_current [A RMS]; dropper_voltage [V RMS];
+    dropper_dc [V]; load_voltage, load_current (loads, n) [V, A]; converged: whether this specimen's balance was met.
     """
 
     specimens: Specimens

@@ -10,6 +10,7 @@ from __future__ import annotations
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, fields, replace
 from enum import IntEnum
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -92,7 +93,7 @@ class Specimens:
 
 def concatenate(parts: Sequence[Specimens]) -> Specimens:
     """Specimens of one shape, one after the other."""
-    arrays = {name: np.concatenate([getattr(part, name) for part in parts], axis=-1) for name in ARRAYS}
+    arrays: dict[str, Any] = {name: np.concatenate([getattr(part, name) for part in parts], axis=-1) for name in ARRAYS}
     return replace(parts[0], **arrays)
 
 

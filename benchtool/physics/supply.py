@@ -12,7 +12,7 @@ import numpy as np
 
 from benchtool.physics import constants as known
 from benchtool.physics import laws
-from benchtool.physics.laws import Array
+from benchtool.physics.laws import Array, Flags
 from benchtool.physics.specimens import Junction, Specimens
 
 STEP = 1e-3
@@ -26,9 +26,9 @@ class Feed:
     specimens: Specimens
     series: Array
     parallel: Array
-    connected: Array
+    connected: Flags
     share: Array
-    blocked_by_dc: Array
+    blocked_by_dc: Flags
 
 
 def feed_of(specimens: Specimens) -> Feed:
@@ -56,14 +56,15 @@ def _share(specimens: Specimens) -> Array:
     return np.where(good, 0.5, 0.0)
 
 
-def _blocked(specimens: Specimens) -> Array:
+def _blocked(specimens: Specimens) -> Flags:
     """Where current can pass one way only, so that the dropper charges to the crest and blocks; bool (n,)."""
     state = specimens.junction
     if specimens.shape.rectifier == "bridge":
-        return state == Junction.SERIES_OPEN
+        return np.asarray(state == Junction.SERIES_OPEN)
     if specimens.shape.zener_at_node:
-        return np.isinf(specimens.zener[0]) & np.isinf(specimens.zener_short[0]) & (state == Junction.GOOD)
-    return state == Junction.RETURN_OPEN
+        no_return = np.isinf(specimens.zener[0]) & np.isinf(specimens.zener_short[0])
+        return np.asarray(no_return & (state == Junction.GOOD))
+    return np.asarray(state == Junction.RETURN_OPEN)
 
 
 def half_swing(specimens: Specimens, rail: Array) -> Array:
