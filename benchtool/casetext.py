@@ -20,9 +20,11 @@ BLOCKS = ("rail", "load", "reading")
 """Lists whose entries stand under headers of their own, `[[reading]]`; other lists stand on one line."""
 
 
-def fresh(data: Data) -> str:
-    """A new text for the plain tables of a case."""
+def fresh(data: Data, comments: Sequence[str] = ()) -> str:
+    """A new text for the plain tables of a case, headed by the comments of a text it takes the place of."""
     document = tomlkit.document()
+    for comment in comments:
+        document.add(tomlkit.comment(comment))
     for key, value in data.items():
         document.add(key, _item(key, value))
     return tomlkit.dumps(document)
