@@ -50,7 +50,7 @@ FEED_KEYS = {
 }
 LOAD_KEYS = {
     "current": Keys(("current",)),
-    "coil": Keys(("nominal_voltage",), ("resistance", "power", "pull_in", "drop_out")),
+    "coil": Keys((), ("resistance", "power", "nominal_voltage", "pull_in", "drop_out")),
     "resistor": Keys((), ("resistance", "power", "nominal_voltage")),
     "led": Keys(("forward_voltage", "resistance")),
     "gate": Keys(("current", "pulse")),

@@ -17,7 +17,6 @@ from benchtool.quantities import (
     parse_accuracy,
     parse_mark,
     parse_tolerance,
-    shown,
 )
 
 UNITS = ("V", "A", "F", "ohm", "W", "Hz", "s", "degC", "%")
@@ -282,9 +281,11 @@ def test_a_decimal_comma_is_taken_where_it_can_only_be_that(text: str, value: fl
     assert parse(text, "V", bare=True) == value
 
 
-def test_found_text_is_cut_and_printable() -> None:
-    assert shown("x" * 41) == "x" * 37 + "..."
-    assert shown("a\x1b[31m\n\u202eb") == "a?[31m??b"
+def test_refused_text_is_repeated_short_and_printable() -> None:
+    with pytest.raises(QuantityError) as refused:
+        parse("a\x1b[31m\n\u202eb" + "x" * 60, "V")
+    assert refused.value.found.isprintable()
+    assert len(refused.value.found) < 80
 
 
 def test_long_and_hostile_text_costs_no_more_than_a_few_entries() -> None:

@@ -8,9 +8,9 @@ On the way out `text` writes the numbers itself, because 470 nF must not come ba
 Units are "V", "A", "F", "ohm", "W", "Hz", "s", "degC" and "%" (a fraction inside: 10 % is 0.10).
 """
 
-from .entry import parse, parse_accuracy, parse_mark, parse_tolerance, shown
-from .series import SERIES, nearest
-from .text import exact, round_up, show, show_range, show_up
+from benchtool.quantities.entry import parse, parse_accuracy, parse_mark, parse_tolerance
+from benchtool.quantities.series import SERIES, nearest
+from benchtool.quantities.text import exact, round_up, show, show_range, show_up
 
 __all__ = [
     "SERIES",
@@ -24,5 +24,4 @@ __all__ = [
     "show",
     "show_range",
     "show_up",
-    "shown",
 ]

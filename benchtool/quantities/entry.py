@@ -8,10 +8,11 @@ from decimal import Decimal
 from functools import lru_cache
 from typing import NamedTuple
 
-from ..errors import QuantityError
-from .series import SERIES
-from .text import show
-from .units import EXPONENTS, KINDS, to_si
+from benchtool.errors import QuantityError
+from benchtool.printable import printable
+from benchtool.quantities.series import SERIES
+from benchtool.quantities.text import show
+from benchtool.quantities.units import EXPONENTS, KINDS, to_si
 
 _LONGEST = 40
 _NUMBER = r"[+-]?(?:[0-9]+(?:\.[0-9]*|,[0-9]+)?|[.,][0-9]+)(?:[eE][+-]?[0-9]{1,3})?"
@@ -49,7 +50,7 @@ def parse(text: str, unit: str, *, bare: bool = False) -> float:
     plain = _plain(text, unit, bare)
     read = _read_mark(plain, unit) or _read_number(plain, unit)
     if read is None:
-        raise QuantityError(f"{shown(text)} is not a {KINDS[unit].noun}", _allowed(unit, bare))
+        raise QuantityError(f"{printable(text)} is not a {KINDS[unit].noun}", _allowed(unit, bare))
     if _TWO_MEANINGS.fullmatch(read.number):
         point, whole = read.number.replace(",", "."), read.number.replace(",", "")
         raise QuantityError(f"{read.number} can mean two things", f"type {point} or {whole}.")
@@ -74,7 +75,7 @@ def parse_tolerance(text: str) -> float:
     if percent := _PERCENT_OF.get(plain.upper()):
         return percent / 100
     allowed = "percent, like 10 % or ±5 %, or a letter, as J for 5, K for 10, M for 20."
-    refusal = QuantityError(f"{shown(text)} is not a tolerance", allowed)
+    refusal = QuantityError(f"{printable(text)} is not a tolerance", allowed)
     try:
         fraction = parse(_BOTH_WAYS.sub("", plain), "%")
     except QuantityError:
@@ -91,7 +92,7 @@ def parse_accuracy(text: str, unit: str) -> tuple[float, float]:
     percents = [term for term in terms if term.endswith("%")]
     floors = [term for term in terms if not term.endswith("%")]
     example = f"percent, a floor or both, like 0.5 % + {KINDS[unit].floor}."
-    refusal = QuantityError(f"{shown(text)} is not an accuracy", example)
+    refusal = QuantityError(f"{printable(text)} is not an accuracy", example)
     if "" in terms or len(percents) > 1 or len(floors) > 1:
         raise refusal
     fraction = parse(percents[0], "%") if percents else 0.0
@@ -99,12 +100,6 @@ def parse_accuracy(text: str, unit: str) -> tuple[float, float]:
     if min(fraction, floor) < 0.0:
         raise refusal
     return fraction, floor
-
-
-def shown(text: str) -> str:
-    """What was typed, fit to stand in a message: printable, one line, cut at 40 characters."""
-    printable = "".join(sign if sign.isprintable() else "?" for sign in text[: _LONGEST + 1])
-    return printable if len(printable) <= _LONGEST else printable[: _LONGEST - 3] + "..."
 
 
 class _Read(NamedTuple):
@@ -116,10 +111,10 @@ class _Read(NamedTuple):
 def _plain(text: str, unit: str, bare: bool) -> str:
     """The text with one spelling for each sign; refuses what cannot be an entry at all."""
     if len(text) > _LONGEST:
-        raise QuantityError(f"{shown(text)} is too long", _allowed(unit, bare))
+        raise QuantityError(f"{printable(text)} is too long", _allowed(unit, bare))
     plain = " ".join(part for part in text.translate(_SAME).split(" ") if part)
     if not plain.isprintable():
-        raise QuantityError(f"{shown(text)} holds a sign that cannot be printed", _allowed(unit, bare))
+        raise QuantityError(f"{printable(text)} holds a sign that cannot be printed", _allowed(unit, bare))
     if not plain:
         raise QuantityError("nothing typed", _allowed(unit, bare))
     return plain
@@ -178,7 +173,7 @@ def _code(plain: str, unit: str) -> float | None:
 def _finite(number: Decimal, prefix: str, unit: str, text: str) -> float:
     value = to_si(number, prefix, unit)
     if not math.isfinite(value) or (value == 0.0 and number != 0):
-        raise QuantityError(f"{shown(text)} is beyond all bounds", _allowed(unit, bare=False))
+        raise QuantityError(f"{printable(text)} is beyond all bounds", _allowed(unit, bare=False))
     return value
 
 

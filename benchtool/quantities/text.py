@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 from decimal import ROUND_CEILING, ROUND_HALF_UP, Decimal
 
-from .units import EXPONENTS, KINDS, WIDE
+from benchtool.quantities.units import EXPONENTS, KINDS, WIDE
 
 # The smallest size that still takes a prefix, where the trade departs from "at least 1 before the prefix":
 # 0.25 W, 0.3 V, 0.47 ohm, and 4700 uF rather than 4.7 mF (common practice, no source).
