@@ -26,8 +26,8 @@ def is_printable(text: str) -> bool:
 
 def printable(text: str, limit: int = SHORT) -> str:
     """The text cut to `limit` characters, with every sign that a terminal would obey written as its code."""
-    cut = text if len(text) <= limit else text[: limit - 1] + "…"
-    return "".join(sign if sign.isprintable() else _code(sign) for sign in cut)
+    plain = "".join(sign if is_printable(sign) and sign.isprintable() else _code(sign) for sign in text[: limit + 1])
+    return plain if len(plain) <= limit else plain[: limit - 1] + "…"
 
 
 def _code(sign: str) -> str:

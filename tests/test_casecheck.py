@@ -202,7 +202,6 @@ def test_each_kind_of_load_with_its_own_keys(body: str) -> None:
         ('kind = "resistor"\nrail = "low"', ["resistance"]),
         ('kind = "resistor"\nrail = "low"\npower = "1 W"', ["resistance"]),
         (COIL, ["resistance"]),
-        ('kind = "coil"\nrail = "top"\nresistance = "810 ohm"', []),
         ('kind = "coil"\nrail = "top"\npower = "400 mW"', ["resistance"]),
         ('kind = "current"\nrail = "low"\ncurrent = "1 mA"\npull_in = "70 %"', ["pull_in"]),
         (COIL + 'resistance = "810 ohm"\npulse = "1 ms"', ["pulse"]),
@@ -221,6 +220,10 @@ def test_each_kind_of_load_with_its_own_keys(body: str) -> None:
 def test_keys_a_load_lacks_or_cannot_have(body: str, wrong: list[str]) -> None:
     found = places(loads(body))
     assert sorted(found) == sorted(('[[board.load]] 1 "load"', key) for key in wrong)
+
+
+def test_a_coil_with_its_resistance_needs_no_nominal_voltage() -> None:
+    assert board(loads('kind = "coil"\nrail = "top"\nresistance = "810 ohm"')).loads[0].nominal_voltage is None
 
 
 def test_names_of_loads_are_unique_and_none_is_reserved() -> None:

@@ -221,7 +221,7 @@ def test_what_is_no_accuracy(text: str) -> None:
         ("40 K", "degC", True, "40 K is not a temperature: degrees Celsius, like 40 or 40C."),
         ("ten", "%", False, "ten is not a percentage: percent, like 10 % or 0.5%."),
         ("", "A", True, "nothing typed: amperes, like 0.0035 or 3m5."),
-        ("23\t1", "V", True, "23?1 holds a sign that cannot be printed: volts, like 23.1 or 850m."),
+        ("23\t1", "V", True, "23\\u00091 holds a sign that cannot be printed: volts, like 23.1 or 850m."),
         ("1e999", "V", True, "1e999 is beyond all bounds: volts, like 23.1 V or 850m."),
         ("1e-400", "V", True, "1e-400 is beyond all bounds: volts, like 23.1 V or 850m."),
     ],
