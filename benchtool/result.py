@@ -148,6 +148,8 @@ def _because(row: Because) -> Plain:
         "load": reading.load,
         "on": None if reading.on is None else list(reading.on),
         "read": read_text(reading),
+        "read_low": None if row.read is None else row.read[0],
+        "read_high": None if row.read is None else row.read[1],
         "expected_if_this": expected_text(row.if_this, reading.what),
         "expected_if_healthy": expected_text(row.if_healthy, reading.what),
         "weight": row.weight,

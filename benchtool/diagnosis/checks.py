@@ -19,7 +19,7 @@ from benchtool.diagnosis.likelihood import LOGARITHMIC, SMALLEST, spread, word_c
 from benchtool.diagnosis.posterior import ELSEWHERE, Posterior
 from benchtool.observed import Check, Meter
 from benchtool.physics.laws import Array, Flags
-from benchtool.physics.sequence import METER_BLUR, apart
+from benchtool.physics.sequence import METER_BLUR, coordinate
 
 FIRST_LIVE_MINUTES = 5.0
 FIRST_DEAD_MINUTES = 2.0
@@ -174,7 +174,7 @@ def _blur(shown: Shown, kind: ReadingKind, meter: Meter) -> Array:
     """Numbers as a meter would show them: moved by their own sigma, evenly within ± √3 of it."""
     assert shown.value is not None
     value = np.where(np.isfinite(shown.value), shown.value, 0.0)
-    even = apart(METER_BLUR, len(value))
+    even = coordinate(METER_BLUR, len(value))
     return np.asarray(value + spread(shown, kind, meter) * np.sqrt(3.0) * (2.0 * even - 1.0))
 
 

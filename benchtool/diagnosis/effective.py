@@ -27,7 +27,7 @@ from benchtool.physics.budget import (
 )
 from benchtool.physics.laws import Array, two_sigma
 from benchtool.physics.mean_value import demand_at, settle
-from benchtool.physics.sequence import METER, apart
+from benchtool.physics.sequence import METER, coordinate
 from benchtool.physics.specimens import Specimens, as_marked
 
 DRAWN = 256
@@ -151,7 +151,7 @@ class _Solver:
         """The true value behind the reading, spread over the two sigma of meter and physics, (n,)."""
         share = LINE_ERROR if reading.what in BY_LINE else RAIL_ERROR
         limit = np.hypot(self._two_sigma(reading.check, value), 2.0 * share * abs(value))
-        return np.asarray(np.maximum(value + limit * (2.0 * apart(METER, DRAWN) - 1.0), 0.0))
+        return np.asarray(np.maximum(value + limit * (2.0 * coordinate(METER, DRAWN) - 1.0), 0.0))
 
     def _by_rail(self, reading: Reading, value: float) -> Effective:
         on, warm = reading.on or (), reading.when == "warm"

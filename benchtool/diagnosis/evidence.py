@@ -14,8 +14,8 @@ from benchtool.diagnosis.likelihood import accuracy_of
 from benchtool.diagnosis.posterior import Evidence, log_sum
 from benchtool.observed import Accuracy, Check, Meter, Reading
 from benchtool.physics.bench import Bench
-from benchtool.physics.laws import Array, two_sigma
-from benchtool.physics.sequence import METER_BLUR, apart
+from benchtool.physics.laws import Array, accuracy_band, two_sigma
+from benchtool.physics.sequence import METER_BLUR, coordinate
 
 BAND = (2.5, 97.5)
 """Percent points of every range that is told."""
@@ -36,9 +36,13 @@ class Expected:
 
 @dataclass(frozen=True, slots=True)
 class Because:
-    """One reading's say on one suspect; `weight` is log10 of P(reading | this) over P(reading | healthy)."""
+    """One reading's say on one suspect; `weight` is log10 of P(reading | this) over P(reading | healthy).
+
+    `read`: between which values the meter's data sheet puts what was read [the reading's unit], None for words.
+    """
 
     reading: Reading
+    read: tuple[float, float] | None
     if_this: Expected
     if_healthy: Expected
     weight: float
@@ -69,7 +73,7 @@ def _as_metered(shown: Shown, accuracy: Accuracy) -> Array:
     assert shown.value is not None
     values = shown.value[np.isfinite(shown.value)]
     limit = two_sigma(values, accuracy.relative, accuracy.floor)
-    return np.asarray(values + limit * (2.0 * apart(METER_BLUR, values.size) - 1.0))
+    return np.asarray(values + limit * (2.0 * coordinate(METER_BLUR, values.size) - 1.0))
 
 
 def because(item: Evidence, healthy: Evidence, board: Board, meter: Meter, readings: Sequence[Reading]) -> tuple[Because, ...]:
@@ -77,12 +81,20 @@ def because(item: Evidence, healthy: Evidence, board: Board, meter: Meter, readi
     return tuple(
         Because(
             reading=reading,
+            read=_guaranteed(reading, meter),
             if_this=expected(item.first.bench, board, reading.check, meter),
             if_healthy=expected(healthy.first.bench, board, reading.check, meter),
             weight=(_alone(item.first, row) - _alone(healthy.first, row)) / float(np.log(10.0)),
         )
         for row, reading in enumerate(readings)
     )
+
+
+def _guaranteed(reading: Reading, meter: Meter) -> tuple[float, float] | None:
+    if not isinstance(reading.value, float):
+        return None
+    accuracy = accuracy_of(READING_KINDS[reading.what], meter)
+    return accuracy_band(reading.value, accuracy.relative, accuracy.floor)
 
 
 def _alone(item: Evidence, row: int) -> float:

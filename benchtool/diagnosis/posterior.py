@@ -22,7 +22,7 @@ from benchtool.observed import Meter, Reading
 from benchtool.physics import constants as known
 from benchtool.physics.bench import Bench
 from benchtool.physics.laws import Array, two_sigma
-from benchtool.physics.sequence import OTHER_SEVERITY, SECOND_SEVERITY, SEVERITY, apart
+from benchtool.physics.sequence import OTHER_SEVERITY, SECOND_SEVERITY, SEVERITY, coordinate
 from benchtool.physics.specimens import Specimens, concatenate, population
 
 DRAWN = 384
@@ -157,7 +157,7 @@ class _Judge:
     def again(self, item: Evidence) -> Evidence:
         """A hypothesis drawn closer: only the severities that account for the readings, their chance weighed in."""
         joint = item.log_joint
-        severity = apart(SEVERITY, len(joint))
+        severity = coordinate(SEVERITY, len(joint))
         counts = severity[joint > joint.max() + np.log(COUNTS_FROM)]
         margin = 2.0 / len(joint)
         low, high = max(float(counts.min()) - margin, 0.0), min(float(counts.max()) + margin, 1.0)
@@ -172,10 +172,10 @@ class _Judge:
             if self._mains_known and struck.fault.name in ("mains-low", "mains-high"):
                 continue
             if number == 0:
-                severity = low + (high - low) * apart(SEVERITY, healthy.count)
+                severity = low + (high - low) * coordinate(SEVERITY, healthy.count)
             else:
-                severity = apart(SECOND_SEVERITY, healthy.count)
-            scene = scene_of(self.board, struck.place, severity, apart(OTHER_SEVERITY, healthy.count))
+                severity = coordinate(SECOND_SEVERITY, healthy.count)
+            scene = scene_of(self.board, struck.place, severity, coordinate(OTHER_SEVERITY, healthy.count))
             specimens = struck.fault.strike(specimens, scene)
         return specimens
 

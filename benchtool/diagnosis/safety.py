@@ -22,7 +22,7 @@ SENTENCES = {
     "bleeder-low": "The bleeder is low: it runs hot and loads the dropper. Replace it with its marked value.",
     "no-bleeder": "No bleeder is stated: {stored_V} may stay in the dropper for hours. Discharge by hand and measure.",
     "slow-discharge": "The plug pins fall to {limit_V} only after {seconds} by this supply alone; the limit is {limit_s} "
-    "(IEC 60335-1 22.5). Discharge by hand and measure.",
+    "(IEC 60335-1 22.5), and then they still hold {left_V}. Discharge by hand and measure.",
     "bleeder-overvoltage": "Each resistor of the bleeder string stands {each_V} against a rating of {rated_V}: it may fail open.",
     "no-safety-class": "The dropper has no safety class: across or in the mains it must have one (IEC 60384-14).",
     "dropper-overvoltage": "The dropper is rated {rated_V} AC and may see {highest_V}.",
@@ -89,9 +89,9 @@ def _discharge(board: Board, discharge: Discharge) -> list[Finding]:
     figures = {"stored_V": discharge.start, "limit_V": known.PLUG_LIMIT_VOLTS, "limit_s": known.PLUG_LIMIT_SECONDS}
     if board.bleeder is None:
         return [Finding("no-bleeder", 1.0, figures)]
-    if discharge.to_limit is None:
+    if discharge.to_limit is None or discharge.left is None:
         return []
-    return [Finding("slow-discharge", 1.0, {**figures, "seconds": discharge.to_limit})]
+    return [Finding("slow-discharge", 1.0, {**figures, "seconds": discharge.to_limit, "left_V": discharge.left})]
 
 
 def _string(board: Board) -> list[Finding]:

@@ -6,7 +6,7 @@ from dataclasses import fields, replace
 
 from benchtool.physics.laws import Array
 from benchtool.physics.mean_value import settle
-from benchtool.physics.sequence import METER_WINDOW, apart
+from benchtool.physics.sequence import METER_WINDOW, coordinate
 from benchtool.physics.settled import Settled
 from benchtool.physics.specimens import Specimens, take
 
@@ -44,4 +44,4 @@ class Bench:
 
     def chance(self) -> Array:
         """A coordinate evenly over 0 to 1 for what depends on the meter and not on the specimen, (n,)."""
-        return apart(METER_WINDOW, self.specimens.count)
+        return coordinate(METER_WINDOW, self.specimens.count)

@@ -19,7 +19,10 @@ Branch = tuple[Array, Array]
 
 
 def junction(voltage: Array, at_voltage: Array | float, at_current: float, slope: float) -> Branch:
-    """at_current·exp((voltage − at_voltage) / slope): diode, zener in reverse, LED junction. Infinite `at_voltage`: nothing."""
+    """Current [A] and slope [S] of at_current·exp((voltage − at_voltage) / slope), all in volts and amperes; (n,).
+
+    Diode, zener in reverse, LED junction. Infinite `at_voltage`: nothing.
+    """
     steep = slope * np.log(STEEP_LIMIT / at_current)
     over = np.asarray(voltage - at_voltage)
     current = at_current * np.exp(np.minimum(over, steep) / slope)
@@ -37,15 +40,15 @@ def zener(voltage: Array, marked: Array, short: Array) -> Branch:
 
 
 def resistor(voltage: Array, resistance: Array) -> Branch:
-    """Ohm's law; infinite resistance draws nothing."""
+    """Ohm's law: current [A] and slope [S] at `voltage` [V] over `resistance` [ohm]; infinite resistance draws nothing."""
     conductance = 1.0 / resistance
     return voltage * conductance, conductance
 
 
 def constant_current(voltage: Array, current: Array) -> Branch:
-    """I·tanh(V / 0.5 V), zero below 0 V: a controller that draws less as its rail collapses."""
+    """I·tanh(V / 0.5 V) [A] and its slope [S], zero below 0 V: a controller that draws less as its rail collapses."""
     level = np.tanh(np.maximum(voltage, 0.0) / known.CURRENT_LOAD_KNEE)
-    slope = np.where(voltage > 0.0, current * (1.0 - level**2) / known.CURRENT_LOAD_KNEE, 0.0)
+    slope = np.where(voltage >= 0.0, current * (1.0 - level**2) / known.CURRENT_LOAD_KNEE, 0.0)
     return current * level, slope
 
 

@@ -42,22 +42,21 @@ def capacitor_current(
     return np.asarray(np.maximum(conductance * k * np.asarray(crest) - answered * np.asarray(half_swing), 0.0))
 
 
-def capacitance_for(
-    current: Number, crest: Number, frequency: Number, resistance: Number, half_swing: Number
-) -> Array:
+def capacitance_for(current: Number, crest: Number, frequency: Number, resistance: Number, half_swing: Number) -> Array:
     """The dropper [F] that drives the mean `current` [A] through a full-wave rectifier: `capacitor_current` turned round.
 
-    Fixed point on k and the swing's share; NaN where no capacitance gives that current.
+    Bisection in the logarithm, as the current rises with the dropper; nil for no current, NaN where no capacitance from 1 pF
+    to 1 mF gives that much.
     """
-    current, crest, half_swing = np.broadcast_arrays(np.asarray(current, dtype=float), crest, half_swing)
-    frequency, resistance = np.asarray(frequency), np.asarray(resistance)
-    capacitance = current / (4.0 * frequency * np.where(crest > half_swing, crest - half_swing, np.nan))
-    for _ in range(40):
-        k = crest_factor_k(resistance, capacitance, frequency)
-        share = 1.0 / np.hypot(1.0, 4.0 * frequency * capacitance * resistance)
-        drive = k * crest - share * half_swing
-        capacitance = current / (4.0 * frequency * np.where(drive > 0.0, drive, np.nan))
-    return np.asarray(capacitance)
+    wanted = np.asarray(current, dtype=float)
+    shape = np.broadcast(wanted, crest, half_swing, resistance).shape
+    low, high = np.full(shape, np.log(1e-12)), np.full(shape, np.log(1e-3))
+    for _ in range(60):
+        middle = 0.5 * (low + high)
+        enough = capacitor_current(crest, frequency, np.exp(middle), resistance, half_swing) >= wanted
+        low, high = np.where(enough, low, middle), np.where(enough, middle, high)
+    found = np.where(wanted > 0.0, np.exp(0.5 * (low + high)), 0.0)
+    return np.where(high < np.log(1e-3), found, np.nan)
 
 
 def resistor_current(crest: Number, resistance: Number, threshold: Number) -> Array:
@@ -152,7 +151,7 @@ def accuracy_band(value: float, relative: float, floor: float) -> tuple[float, f
 
 
 def two_sigma(value: Number, relative: float, floor: float) -> Array:
-    """A meter's two-sigma limit with the two terms as a root sum of squares, as they seldom fail together."""
+    """A meter's two-sigma limit for `value`, its share and floor as a root sum of squares: they seldom fail together."""
     return np.hypot(relative * np.asarray(value, dtype=float), floor)
 
 

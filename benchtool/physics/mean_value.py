@@ -25,7 +25,9 @@ MOST_STEPS = 80
 STEPS_TOGETHER = 3
 CUTS = 7
 BALANCED = 1e-8
-"""A specimen is solved when every rail's currents add up to less than this [A]."""
+"""A specimen is solved when every rail's currents add up to less than this [A],"""
+STANDS = 1e-7
+"""or when no rail moves by more than this any more [V]: a rail may sit on a kink, as at the crest."""
 WARMING_STEPS = 4
 COIL_WARM_KELVIN = 60.0
 """What 15 minutes on do to a coil inside a warm appliance: kelvin above the bench; value from memory."""
@@ -39,12 +41,12 @@ class Balance:
         self.slopes = np.zeros((count, rails, rails))
 
     def inject(self, rail: int, current: Array, slope: Array) -> None:
-        """A source's current into `rail`, with its slope against that rail's voltage."""
+        """A source's `current` [A] into `rail`, with its slope against that rail's voltage [S], each (n,)."""
         self.surplus[rail] += current
         self.slopes[:, rail, rail] += slope
 
     def branch(self, start: int, end: int, branch: branches.Branch) -> None:
-        """A branch from rail `start` to rail `end` or common."""
+        """A branch's current [A] and slope [S], each (n,), from rail `start` to rail `end` or common."""
         current, slope = branch
         self.inject(start, -current, -slope)
         if end != TO_COMMON:
@@ -72,7 +74,7 @@ def network_of(specimens: Specimens, on: tuple[str, ...], warm: bool) -> Network
 
 
 def across(rails: Array, start: int, end: int) -> Array:
-    """Voltage between two rails, or a rail and common; (n,)."""
+    """Voltage [V] between two of the `rails` (rails, n) [V], or a rail and common; (n,)."""
     return rails[start] if end == TO_COMMON else np.asarray(rails[start] - rails[end])
 
 
@@ -92,7 +94,10 @@ def load_branch(network: Network, index: int, voltage: Array) -> branches.Branch
 
 
 def zener_branch(specimens: Specimens, index: int, rails: Array) -> branches.Branch:
-    """Mean current through the zener of rail `index`. At the dropper node it stands a diode higher and conducts half the time."""
+    """Mean current [A] through the zener of rail `index` and its slope [S], with the rails at `rails` (rails, n) [V].
+
+    At the dropper node it stands a diode higher and conducts half the time.
+    """
     rail = specimens.shape.rails[index]
     voltage = across(rails, index, rail.clamps_to)
     marked, short = specimens.zener[index], specimens.zener_short[index]
@@ -126,10 +131,12 @@ def _newton(evaluate: Evaluate, start: Array, steps: int) -> tuple[Array, Array]
     """
     rails, balance = start, evaluate(start)
     error = np.abs(balance.surplus).max(axis=0)
+    moved = np.full_like(error, np.inf)
     for _ in range(steps):
-        if np.all(error <= BALANCED):
+        if np.all((error <= BALANCED) | (moved <= STANDS)):
             break
         step = np.linalg.solve(balance.slopes, -balance.surplus.T[..., None])[..., 0].T
+        step = np.maximum(step, -rails)  # nothing here pulls a rail under common
         for _ in range(CUTS):
             trial = evaluate(rails + step)
             trial_error = np.abs(trial.surplus).max(axis=0)
@@ -137,8 +144,9 @@ def _newton(evaluate: Evaluate, start: Array, steps: int) -> tuple[Array, Array]
             if not worse.any():
                 break
             step = np.where(worse, 0.25 * step, step)
+        moved = np.abs(step).max(axis=0)
         rails, balance, error = rails + step, trial, trial_error
-    return rails, error <= BALANCED
+    return rails, (error <= BALANCED) | (moved <= STANDS)
 
 
 Source = Callable[[Specimens, Balance, Array], None]
@@ -219,13 +227,14 @@ def _warmed(specimens: Specimens, power: Array) -> Specimens:
 
 
 def _zeners(specimens: Specimens, rails: Array) -> tuple[Array, Array]:
-    """Mean reverse current [A] and power [W] of every rail's zener, each (rails, n)."""
+    """Mean reverse current [A] of every rail's zener, what a short carries left out, and its power [W]; each (rails, n)."""
     current, power = np.zeros_like(rails), np.zeros_like(rails)
     for index, rail in enumerate(specimens.shape.rails):
         voltage = across(rails, index, rail.clamps_to)
         through, _ = zener_branch(specimens, index, rails)
         at_node = index == 0 and specimens.shape.zener_at_node
-        current[index] = np.maximum(through, 0.0)
+        shorted = 0.0 if at_node else voltage / specimens.zener_short[index]
+        current[index] = np.maximum(through - shorted, 0.0)
         power[index] = np.abs(through * (voltage + (known.DIODE_DROP if at_node else 0.0)))
     return current, power
 
@@ -237,7 +246,8 @@ def _settled(network: Network, cold: Specimens, rails: Array, converged: Array) 
     zener_current, zener_power = _zeners(specimens, rails)
     if shape.zener_at_node:
         zener_power[0] += supply * known.DIODE_DROP
-    voltages = np.array([across(rails, load.rail, load.returns_to) for load in shape.loads]).reshape(len(shape.loads), -1)
+    voltages = np.array([across(rails, load.rail, load.returns_to) for load in shape.loads])
+    voltages = voltages.reshape(len(shape.loads), specimens.count)
     currents = [load_branch(network, index, voltages[index])[0] for index in range(len(shape.loads))]
     side = mains_side(feed, rails[0])
     ripple = ripple_estimate(specimens, rails, supply, zener_current)
@@ -252,6 +262,6 @@ def _settled(network: Network, cold: Specimens, rails: Array, converged: Array) 
         dropper_voltage=side.dropper_voltage,
         dropper_dc=side.dropper_dc,
         load_voltage=voltages,
-        load_current=np.array(currents).reshape(len(shape.loads), -1),
+        load_current=np.array(currents).reshape(len(shape.loads), specimens.count),
         converged=converged,
     )

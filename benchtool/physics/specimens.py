@@ -18,7 +18,7 @@ from numpy.typing import NDArray
 from benchtool.board import Board, Load, Maybe, Rail, Unknown, resistance_of
 from benchtool.physics import constants as known
 from benchtool.physics.laws import Array
-from benchtool.physics.sequence import PART_COORDINATES, points
+from benchtool.physics.sequence import FIRST_PART, LAST_PART, coordinate
 from benchtool.physics.shape import Shape, shape_of
 
 
@@ -113,21 +113,23 @@ class _Drawer:
 
     def __init__(self, count: int, spread: bool) -> None:
         self.count = count
-        self._points = iter(points(PART_COORDINATES, count))
+        self._numbers = iter(range(FIRST_PART, LAST_PART))
         self._spread = spread
+
+    def _next(self) -> Array:
+        return coordinate(next(self._numbers), self.count)
 
     def even(self, low: float, high: float) -> Array:
         """Evenly from `low` to `high`; their middle for a nominal board."""
-        coordinate = next(self._points) if self._spread else np.full(self.count, 0.5)
-        return low + (high - low) * coordinate
+        return low + (high - low) * (self._next() if self._spread else np.full(self.count, 0.5))
 
     def part(self, value: Maybe, tolerance: float, unknown: tuple[float, float]) -> Array:
         """A marked value within its tolerance, or evenly in the logarithm over `unknown` where it cannot be read."""
-        coordinate = next(self._points)
+        even = self._next()
         if isinstance(value, Unknown):
             low, high = np.log(unknown)
-            return np.asarray(np.exp(low + (high - low) * coordinate))
-        share = 2.0 * coordinate - 1.0 if self._spread else np.zeros(self.count)
+            return np.asarray(np.exp(low + (high - low) * even))
+        share = 2.0 * even - 1.0 if self._spread else np.zeros(self.count)
         return value * (1.0 + tolerance * share)
 
     def constant(self, value: float) -> Array:

@@ -49,44 +49,50 @@ def highest_crest(board: Board) -> float:
 class Discharge:
     """What the dropper keeps after unplugging, in the slowest corner: capacitance [F], bleeder [ohm], times [s].
 
-    None where a value cannot be known; `bleeder` and the times are None as well where there is no bleeder.
-    `limited`: whether a limit at the plug applies at all (plug-connected and over 0.1 µF).
+    None where a value cannot be known; `bleeder` and the times are None as well where `has_bleeder` is false. `left` [V] is
+    what the pins still hold when the limit's time is over. `limited`: whether a limit at the plug applies at all
+    (plug-connected and over 0.1 µF).
     """
 
     start: float
     capacitance: float | None
     bleeder: float | None
     to_limit: float | None
+    left: float | None
     wait: float | None
     energy: float | None
     limited: bool
+    has_bleeder: bool
 
     @property
     def slow(self) -> bool | None:
         """Whether the plug stays above its limit for too long; None where that cannot be known."""
         if not self.limited:
             return False
-        if self.capacitance is None:
-            return None
-        return self.to_limit is None or self.to_limit > known.PLUG_LIMIT_SECONDS
+        if self.to_limit is not None:
+            return self.to_limit > known.PLUG_LIMIT_SECONDS
+        return None if self.has_bleeder or self.capacitance is None else True
 
 
 def discharge_of(board: Board) -> Discharge:
     """The dropper's discharge through its bleeder: highest crest, dropper and bleeder at the high end of their tolerance."""
     capacitance, bleeder = _highest_capacitance(board), _highest_bleeder(board)
     start = highest_crest(board)
-    time, wait = None, None
+    time, wait, left = None, None, None
     if capacitance is not None and bleeder is not None:
         time = float(laws.discharge_time(start, bleeder, capacitance, known.PLUG_LIMIT_VOLTS))
+        left = float(laws.discharge_voltage(start, bleeder, capacitance, known.PLUG_LIMIT_SECONDS))
         wait = max(5.0, 5.0 * float(np.ceil(bleeder * capacitance)))
     return Discharge(
         start=start,
         capacitance=capacitance,
         bleeder=bleeder,
         to_limit=time,
+        left=left,
         wait=wait,
         energy=None if capacitance is None else 0.5 * capacitance * start**2,
         limited=_limited(board, capacitance),
+        has_bleeder=board.bleeder is not None,
     )
 
 
