@@ -16,7 +16,7 @@ from benchtool.catalogue.shows import SHOWS
 from benchtool.diagnosis.checks import next_checks
 from benchtool.diagnosis.disagreement import disagreements
 from benchtool.diagnosis.effective import effective_of
-from benchtool.diagnosis.evidence import because, fails_to_run
+from benchtool.diagnosis.evidence import Because, because, fails_to_run
 from benchtool.diagnosis.posterior import Posterior, posterior_of
 from benchtool.diagnosis.safety import safety_findings
 from benchtool.observed import Reading
@@ -53,7 +53,7 @@ def assess(case: Case) -> Assessment:
         states=states_of(board, readings),
         budget=budget_of(board),
         effective=effective_of(board, case.meter, readings),
-        suspects=_suspects(posterior),
+        suspects=_suspects(posterior, case),
         disagreements=disagreements(posterior),
         next_checks=next_checks(posterior, [reading.check for reading in readings]),
         unused=tuple(reading for reading in readings if reading.what not in SHOWS and reading.what != "look"),
@@ -120,16 +120,21 @@ def _rail_state(board: Board, index: int, settled: Settled, band: Settled) -> Ra
     )
 
 
-def _suspects(posterior: Posterior) -> tuple[Suspect, ...]:
-    """Every hypothesis and `unexplained`, the most probable first."""
+def _suspects(posterior: Posterior, case: Case) -> tuple[Suspect, ...]:
+    """Every hypothesis and `unexplained`, the most probable first; evidence in the order it was taken."""
     board, meter, readings = posterior.board, posterior.meter, posterior.readings
+    order = {reading: number for number, reading in enumerate(case.readings)}
+
+    def taken_as(row: Because) -> int:
+        return order[row.reading]
+
     healthy = next(item for item in posterior.evidence if not item.hypothesis.faults)
     suspects = [
         Suspect(
             hypothesis=item.hypothesis,
             probability=float(probability),
             explains_complaint=bool(item.hypothesis.faults) and fails_to_run(item, board),
-            because=because(item, healthy, board, meter, readings),
+            because=tuple(sorted(because(item, healthy, board, meter, readings), key=taken_as)),
         )
         for item, probability in zip(posterior.evidence, posterior.probabilities, strict=True)
     ]

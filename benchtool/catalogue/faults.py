@@ -63,6 +63,10 @@ def _capacitor(board: Board) -> bool:
     return board.dropper.kind != "resistor"
 
 
+def _divider(board: Board) -> bool:
+    return board.dropper.kind == "divider"
+
+
 def _zener(board: Board, index: int) -> bool:
     return board.rails[index].zener is not None
 
@@ -103,6 +107,9 @@ FAULTS: tuple[Fault, ...] = (
     Fault("dropper-open", "dropper", "dropper: open", 15, 10, CRACKED, lambda board: ANYWHERE, strikes.dropper_open),
     Fault("dropper-short", "dropper", "dropper: shorted", 5, 60, CRACKED, lambda board: ANYWHERE, strikes.dropper_short),
     Fault("wrong-part", "dropper", "dropper: wrong value fitted", 5, 50, "earlier repair", _if(_wrong), strikes.wrong_part),
+    Fault("shunt-capacitor-lost", "shunt", "divider's second capacitor: capacitance lost", 60, 3, CRACKED, _if(_divider), strikes.shunt_lost),
+    Fault("shunt-capacitor-open", "shunt", "divider's second capacitor: open", 5, 10, CRACKED, _if(_divider), strikes.shunt_open),
+    Fault("shunt-capacitor-short", "shunt", "divider's second capacitor: shorted", 3, 60, CRACKED, _if(_divider), strikes.shunt_short),
     Fault("fuse-open", "fuse", "fuse: open", 10, 50, "blown fuse", _if(lambda board: board.fuse is not None), strikes.fuse_open),
     Fault(
         "varistor-short", "varistor", "varistor: shorted", 8, 85, "cracked varistor",

@@ -185,6 +185,12 @@ def _dropper_capacitance(bench: Bench, board: Board, check: Check) -> Shown:
     return Shown(value, opened=specimens.capacitance < floor, shorted=np.isfinite(specimens.dropper_short))
 
 
+def _shunt_capacitance(bench: Bench, board: Board, check: Check) -> Shown:
+    value, mark = bench.specimens.shunt, board.dropper.shunt_capacitance
+    floor = 0.02 * mark if isinstance(mark, float) else 1e-9
+    return Shown(value, opened=value < floor, shorted=np.isfinite(bench.specimens.shunt_short))
+
+
 def _fuse(bench: Bench, board: Board, check: Check) -> Shown:
     cold = 0.2 + bench.specimens.fuse
     return Shown(cold, 0.2, opened=np.isinf(cold))
@@ -318,6 +324,7 @@ SHOWS: dict[str, Shows] = {
     "dropper-dc-voltage": _dropper_dc,
     "load-responds": _responds,
     "dropper-capacitance": _dropper_capacitance,
+    "shunt-capacitance": _shunt_capacitance,
     "fuse-resistance": _fuse,
     "varistor-resistance": _varistor,
     "path-resistance": _path,
@@ -335,4 +342,4 @@ SHOWS: dict[str, Shows] = {
     "switch-test": _switch,
     "tap-test": _tap,
 }
-"""Readings that the physics can foretell. Not yet: shunt-capacitance and rail-injection."""
+"""Readings that the physics can foretell. Not yet: rail-injection."""

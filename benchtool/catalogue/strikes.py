@@ -77,9 +77,12 @@ def _all(specimens: Specimens, value: float) -> Array:
 
 def dropper_lost(specimens: Specimens, scene: Scene) -> Specimens:
     """2 % to the tolerance band's edge of the mark, mostly 10 to 85 %."""
+    return replace(specimens, capacitance=_mark(specimens, scene.board) * _left(scene))
+
+
+def _left(scene: Scene) -> Array:
     edge = max(1.0 - dropper_tolerance(scene.board), 0.05)
-    left = np.interp(scene.severity, [0.0, 0.05, 0.95, 1.0], [0.02, 0.10 * edge / 0.9, 0.85 * edge / 0.9, edge])
-    return replace(specimens, capacitance=_mark(specimens, scene.board) * left)
+    return np.interp(scene.severity, [0.0, 0.05, 0.95, 1.0], [0.02, 0.10 * edge / 0.9, 0.85 * edge / 0.9, edge])
 
 
 def _mark(specimens: Specimens, board: Board) -> Array:
@@ -89,15 +92,33 @@ def _mark(specimens: Specimens, board: Board) -> Array:
 
 def dropper_open(specimens: Specimens, scene: Scene) -> Specimens:
     """Under 2 % of the mark; a resistor dropper conducts nothing."""
-    left = 0.02 * scene.severity**3
-    return replace(
-        specimens, capacitance=_mark(specimens, scene.board) * left, dropper_resistance=_all(specimens, np.inf)
-    ) if scene.board.dropper.kind != "resistor" else replace(specimens, dropper_resistance=_all(specimens, np.inf))
+    left = _mark(specimens, scene.board) * 0.02 * scene.severity**3
+    return replace(specimens, capacitance=left, dropper_resistance=_all(specimens, np.inf))
 
 
 def dropper_short(specimens: Specimens, scene: Scene) -> Specimens:
     """About half an ohm across the dropper."""
     return replace(specimens, dropper_short=_all(specimens, known.SHORTED_JUNCTION))
+
+
+def _shunt(specimens: Specimens, scene: Scene) -> Array:
+    mark = scene.board.dropper.shunt_capacitance
+    return _all(specimens, mark) if isinstance(mark, float) else specimens.shunt
+
+
+def shunt_lost(specimens: Specimens, scene: Scene) -> Specimens:
+    """A divider's second capacitor at 2 % to the tolerance band's edge of its mark."""
+    return replace(specimens, shunt=_shunt(specimens, scene) * _left(scene))
+
+
+def shunt_open(specimens: Specimens, scene: Scene) -> Specimens:
+    """Under 2 % of the mark."""
+    return replace(specimens, shunt=_shunt(specimens, scene) * 0.02 * scene.severity**3)
+
+
+def shunt_short(specimens: Specimens, scene: Scene) -> Specimens:
+    """About half an ohm across the rectifier's input."""
+    return replace(specimens, shunt_short=_all(specimens, known.SHORTED_JUNCTION))
 
 
 def wrong_part(specimens: Specimens, scene: Scene) -> Specimens:
@@ -129,8 +150,8 @@ def inrush_high(specimens: Specimens, scene: Scene) -> Specimens:
 
 def _junction(specimens: Specimens, scene: Scene, series: Junction, back: Junction) -> Specimens:
     either = np.where(scene.severity < 0.5, float(series), float(back))
-    bridge = specimens.shape.rectifier == "bridge"
-    return replace(specimens, junction=_all(specimens, float(series)) if bridge else either)
+    two = specimens.shape.rectifier == "half-wave"
+    return replace(specimens, junction=either if two else _all(specimens, float(series)))
 
 
 def diode_open(specimens: Specimens, scene: Scene) -> Specimens:

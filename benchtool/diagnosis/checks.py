@@ -28,6 +28,8 @@ CLASSES = 12
 """Classes that a number is sorted into."""
 WORTH = 0.005
 """Gains below this are noise [bit]."""
+COUNTS_FROM = 1e-4
+"""Share of all that is explained from which a hypothesis counts for the gain."""
 LIVE_PENALTY = 0.7
 """A live check must tell that much more than a dead one of like use: share of its gain that counts."""
 
@@ -44,12 +46,17 @@ class NextCheck:
 
 def candidates(board: Board, taken: Sequence[Check]) -> Iterator[Check]:
     """Every check this board allows that has not been made, states first off, then on."""
-    done = set(taken)
+    done = {_same(check) for check in taken}
     for kind in READINGS:
         if kind.name in SHOWS and kind.name not in ELSEWHERE:
             for check in _places(kind, board):
-                if check not in done:
+                if _same(check) not in done:
                     yield check
+
+
+def _same(check: Check) -> tuple[object, ...]:
+    """What makes two checks the same, whatever order their loads are named in."""
+    return check.what, check.rail, check.load, frozenset(check.on or ()), check.lifted, check.when
 
 
 def _places(kind: ReadingKind, board: Board) -> Iterator[Check]:
@@ -102,11 +109,10 @@ class _Weigher:
 
     def __init__(self, posterior: Posterior) -> None:
         self._posterior = posterior
-        total = float(posterior.probabilities.sum())
         chosen = [
-            (item, probability / total)
-            for item, probability in zip(posterior.evidence, posterior.probabilities, strict=True)
-            if probability > 1e-4 * total
+            (item, share)
+            for item, share in zip(posterior.evidence, posterior.explained, strict=True)
+            if share > COUNTS_FROM
         ]
         self._evidence = [item for item, _ in chosen]
         self._shares = [probability * item.shares() for item, probability in chosen]

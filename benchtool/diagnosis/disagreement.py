@@ -51,19 +51,15 @@ def _log_joint(item: Evidence, rows: tuple[int, ...]) -> float:
 
 
 def _implied(posterior: Posterior, singles: list[Evidence], first: int, second: int) -> tuple[float, float] | None:
-    """What the first reading alone implies for the second: the 95 % range over the faults that account for the first."""
+    """What the first reading implies for the second: the 95 % range under the single fault that best accounts for the first."""
     reading = posterior.readings[second]
     if READING_KINDS[reading.what].unit is None or not isinstance(reading.value, float):
         return None
-    values: list[Array] = []
-    weights: list[Array] = []
-    for item in singles:
-        shown = SHOWS[reading.what](item.bench, posterior.board, reading.check).value
-        assert shown is not None
-        weight = item.hypothesis.weight * np.exp(np.maximum(item.densities[first] + item.log_prior, LEAST))
-        values.append(np.where(np.isfinite(shown), shown, np.nan))
-        weights.append(weight)
-    return weighted_range(np.concatenate(values), np.concatenate(weights))
+    likeliest = max(singles, key=lambda item: np.log(item.hypothesis.weight) + _log_joint(item, (first,)))
+    shown = SHOWS[reading.what](likeliest.bench, posterior.board, reading.check).value
+    assert shown is not None
+    weights = np.exp(np.maximum(likeliest.densities[first] + likeliest.log_prior, LEAST))
+    return weighted_range(np.where(np.isfinite(shown), shown, np.nan), weights)
 
 
 def weighted_range(values: Array, weights: Array) -> tuple[float, float] | None:

@@ -91,7 +91,7 @@ class _Solver:
 
     def __init__(self, board: Board, meter: Meter, readings: Sequence[Reading]) -> None:
         self.board, self.meter = board, meter
-        self.spread = reading_population(board, meter, readings, DRAWN)
+        self.spread, _ = reading_population(board, meter, readings, DRAWN)
         self.marked = as_marked(board)
         self.bench = Bench(self.spread)
         self.smooth = not any(_rough(board, reading) for reading in readings)

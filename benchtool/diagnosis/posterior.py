@@ -14,16 +14,17 @@ import numpy as np
 
 from benchtool.board import Board
 from benchtool.catalogue.faults import UNEXPLAINED_WEIGHT
+from benchtool.catalogue.readings import READING_KINDS
 from benchtool.catalogue.shows import SHOWS
 from benchtool.catalogue.strikes import scene_of
 from benchtool.diagnosis.hypotheses import Hypothesis, hypotheses_of
-from benchtool.diagnosis.likelihood import log_density, log_uniform_density, look_log_chance
+from benchtool.diagnosis.likelihood import accuracy_of, log_density, log_uniform_density, look_log_chance
 from benchtool.observed import Meter, Reading
 from benchtool.physics import constants as known
 from benchtool.physics.bench import Bench
 from benchtool.physics.laws import Array, two_sigma
 from benchtool.physics.sequence import OTHER_SEVERITY, SECOND_SEVERITY, SEVERITY, coordinate
-from benchtool.physics.specimens import Specimens, concatenate, population
+from benchtool.physics.specimens import Specimens, concatenate, population_near
 
 DRAWN = 384
 """Specimens a hypothesis."""
@@ -69,7 +70,10 @@ class Evidence:
 
 @dataclass(frozen=True, slots=True)
 class Posterior:
-    """Every hypothesis with its evidence and probability; `unexplained` stands apart. Probabilities add up to one."""
+    """Every hypothesis with its evidence and probability; `unexplained` stands apart. Probabilities add up to one.
+
+    `explained`: the same probabilities if one of the hypotheses did account for the readings, however unlikely that is.
+    """
 
     board: Board
     meter: Meter
@@ -78,6 +82,7 @@ class Posterior:
     probabilities: Array
     unexplained: float
     uniform: Array
+    explained: Array
 
 
 def log_sum(values: Array) -> float:
@@ -87,49 +92,100 @@ def log_sum(values: Array) -> float:
 
 
 def mains_read(readings: Sequence[Reading]) -> float | None:
-    """The mains voltage that was read [V RMS], or None; the last one where there are several."""
-    read = [reading.value for reading in readings if reading.what == "mains-voltage"]
-    return read[-1] if read and isinstance(read[-1], float) and read[-1] > 0.0 else None
+    """The mains voltage that was read [V RMS], the mean where there are several readings; None without one."""
+    read = [r.value for r in readings if r.what == "mains-voltage" and isinstance(r.value, float) and r.value > 1.0]
+    return float(np.mean(sorted(read))) if read else None
 
 
-def reading_population(board: Board, meter: Meter, readings: Sequence[Reading], count: int) -> Specimens:
-    """Healthy boards as they stood while reading: mains nominal ± 4 %, or what was read within the meter's accuracy."""
-    read = mains_read(readings)
+def reading_population(
+    board: Board, meter: Meter, readings: Sequence[Reading], count: int
+) -> tuple[Specimens, float]:
+    """Healthy boards as they stood while reading, and the logarithm of their share of all boards.
+
+    Mains nominal ± 4 %, or what was read within the meter's accuracy. A part that was itself read is drawn near that value, so
+    that many sharp readings of single parts do not leave a handful of specimens.
+    """
+    read, near = mains_read(readings), near_parts(board, meter, readings)
     if read is None:
-        return population(board, count, known.READING_MAINS_SPREAD)
+        return population_near(board, count, known.READING_MAINS_SPREAD, near)
     spread = float(two_sigma(read, meter.ac_voltage.relative, meter.ac_voltage.floor)) / read
     there = replace(board, mains=replace(board.mains, voltage=read))
-    return population(there, count, spread)
+    return population_near(there, count, spread, near)
 
 
-def usable(readings: Sequence[Reading]) -> tuple[Reading, ...]:
-    """The readings that weigh on the suspects, the same reading with the same value only once."""
-    known_kinds = [r for r in readings if (r.what in SHOWS or r.what == "look") and r.what not in ELSEWHERE]
-    return tuple(dict.fromkeys(known_kinds))
+OF_ONE_PART = {
+    "dropper-capacitance": "dropper",
+    "inrush-resistance": "inrush",
+    "feed-resistance": "feed:{rail}",
+    "zener-test": "zener:{rail}",
+    "reservoir-capacitance": "reservoir:{rail}",
+    "coil-resistance": "load:{load}",
+    "load-current": "load:{load}",
+}
+"""Readings that show the value of one part and nothing else."""
+NEAR_SIGMAS = 4.0
+PART_ERROR = 0.03
+"""One sigma, as a share, that covers the physics' error and smoothing of these readings."""
+
+
+def near_parts(board: Board, meter: Meter, readings: Sequence[Reading]) -> dict[str, tuple[float, float]]:
+    """Between which values a part lies that was read by itself, by its name in the case file."""
+    near: dict[str, tuple[float, float]] = {}
+    for reading in readings:
+        drawn = [load.kind for load in board.loads if load.name == reading.load and reading.what == "load-current"]
+        across_bleeder = reading.what == "dropper-capacitance" and not reading.lifted and board.bleeder is not None
+        if reading.what in OF_ONE_PART and isinstance(reading.value, float) and not across_bleeder and drawn in ([], ["current"]):
+            accuracy = accuracy_of(READING_KINDS[reading.what], meter)
+            limit = float(two_sigma(reading.value, accuracy.relative, accuracy.floor)) / 2.0
+            width = NEAR_SIGMAS * float(np.hypot(limit, PART_ERROR * reading.value))
+            name = OF_ONE_PART[reading.what].format(rail=reading.rail, load=reading.load)
+            near[name] = reading.value - width, reading.value + width
+    return near
+
+
+def usable(board: Board, readings: Sequence[Reading]) -> tuple[Reading, ...]:
+    """The readings that weigh on the suspects, each once, in one order whatever order they were taken in."""
+    weighing = [r for r in readings if (r.what in SHOWS or r.what == "look") and r.what not in ELSEWHERE]
+    in_place = {_order(board, reading): reading for reading in reversed(weighing)}
+    return tuple(in_place[place] for place in sorted(in_place))
+
+
+def _order(board: Board, reading: Reading) -> tuple[str | int | bool | tuple[int, ...], ...]:
+    """A place in line that does not hang on names; the same reading has the same place."""
+    rails, loads = [rail.name for rail in board.rails], [load.name for load in board.loads]
+    rail = rails.index(reading.rail) if reading.rail is not None else -1
+    load = loads.index(reading.load) if reading.load is not None else -1
+    on = tuple(sorted(loads.index(name) for name in reading.on or ()))
+    return (reading.what, rail, load, on, reading.when, reading.lifted, str(reading.value))
 
 
 def posterior_of(board: Board, meter: Meter, readings: Sequence[Reading]) -> Posterior:
     """The probabilities of everything that may be wrong with `board`, given `readings`."""
-    taken = usable(readings)
+    taken = usable(board, readings)
     judge = _Judge(board, meter, taken)
     evidence = judge.first()
-    probabilities, _ = _weigh(judge, evidence)
-    leads = LEADS_FROM * probabilities.sum()
     evidence = [
-        judge.again(item) if probability > leads and item.hypothesis.faults else item
-        for item, probability in zip(evidence, probabilities, strict=True)
+        judge.again(item) if probability > LEADS_FROM else item
+        for item, probability in zip(evidence, _normalised(_logs(evidence)), strict=True)
     ]
     probabilities, unexplained = _weigh(judge, evidence)
-    return Posterior(board, meter, taken, tuple(evidence), probabilities, unexplained, judge.uniform)
+    explained = _normalised(_logs(evidence))
+    return Posterior(board, meter, taken, tuple(evidence), probabilities, unexplained, judge.uniform, explained)
 
 
 def _weigh(judge: _Judge, evidence: Sequence[Evidence]) -> tuple[Array, float]:
     """Bayes' rule: prior weight times likelihood, `unexplained` competing with readings that are mistakes."""
-    logs = [np.log(item.hypothesis.weight) + item.log_likelihood for item in evidence]
-    logs.append(np.log(UNEXPLAINED_WEIGHT) + float(judge.uniform.sum()))
-    stacked = np.array(logs)
-    shares = np.exp(stacked - log_sum(stacked))
+    unexplained = np.log(UNEXPLAINED_WEIGHT) + float(judge.uniform.sum())
+    shares = _normalised(np.append(_logs(evidence), unexplained))
     return shares[:-1], float(shares[-1])
+
+
+def _logs(evidence: Sequence[Evidence]) -> Array:
+    return np.array([np.log(item.hypothesis.weight) + item.log_likelihood for item in evidence])
+
+
+def _normalised(logs: Array) -> Array:
+    return np.asarray(np.exp(logs - log_sum(logs)))
 
 
 class _Judge:
@@ -143,11 +199,11 @@ class _Judge:
     def first(self) -> list[Evidence]:
         """Every hypothesis, its severities evenly drawn; all of them settled in one pass."""
         hypotheses = hypotheses_of(self.board)
-        healthy = reading_population(self.board, self.meter, self.readings, DRAWN)
+        healthy, log_share = reading_population(self.board, self.meter, self.readings, DRAWN)
         struck = [self._strike(hypothesis, healthy, 0.0, 1.0) for hypothesis in hypotheses]
         bench = Bench(concatenate(struck))
         densities = self._densities(bench)
-        level = np.full(DRAWN, -np.log(DRAWN))
+        level = np.full(DRAWN, log_share - np.log(DRAWN))
         slices = [slice(start, start + DRAWN) for start in range(0, bench.specimens.count, DRAWN)]
         return [
             self._evidence(hypothesis, bench.part(where), densities[:, where], level)
@@ -161,9 +217,9 @@ class _Judge:
         counts = severity[joint > joint.max() + np.log(COUNTS_FROM)]
         margin = 2.0 / len(joint)
         low, high = max(float(counts.min()) - margin, 0.0), min(float(counts.max()) + margin, 1.0)
-        healthy = reading_population(self.board, self.meter, self.readings, REDRAWN)
+        healthy, log_share = reading_population(self.board, self.meter, self.readings, REDRAWN)
         bench = Bench(self._strike(item.hypothesis, healthy, low, high))
-        level = np.full(REDRAWN, np.log(high - low) - np.log(REDRAWN))
+        level = np.full(REDRAWN, log_share + np.log(high - low) - np.log(REDRAWN))
         return replace(self._evidence(item.hypothesis, bench, self._densities(bench), level), wide=item)
 
     def _strike(self, hypothesis: Hypothesis, healthy: Specimens, low: float, high: float) -> Specimens:

@@ -8,15 +8,15 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass
 
-import numpy as np
-
 from benchtool.board import Board, Unknown
 from benchtool.observed import Reading
 from benchtool.physics import constants as known
 from benchtool.physics import laws
-from benchtool.physics.stress import Discharge, bleeder_share, discharge_of, highest_crest
+from benchtool.physics.stress import Discharge, bleeder_share, discharge_of
 from benchtool.quantities import show, show_up
 
+ROUNDING = 1e-9
+"""Share by which figures of equal size may differ from being computed."""
 SENTENCES = {
     "bleeder-open": "The bleeder is open or raised: {stored_V} may stay in the dropper for hours. Discharge by hand and measure.",
     "bleeder-low": "The bleeder is low: it runs hot and loads the dropper. Replace it with its marked value.",
@@ -108,7 +108,7 @@ def _class(board: Board) -> list[Finding]:
     if board.dropper.safety_class == "none":
         found.append(Finding("no-safety-class", 1.0, {}))
     rated = board.dropper.rated_voltage
-    highest = highest_crest(board) / float(np.sqrt(2.0))
-    if rated is not None and rated < highest:
+    highest = board.mains.voltage * (1.0 + board.mains.variation)
+    if rated is not None and rated < highest * (1.0 - ROUNDING):
         found.append(Finding("dropper-overvoltage", 1.0, {"rated_V": rated, "highest_V": highest}))
     return found

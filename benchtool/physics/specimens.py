@@ -7,7 +7,7 @@ there conducts nothing: infinite resistance or zener voltage, zero capacitance; 
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, fields, replace
 from enum import IntEnum
 from typing import Any
@@ -53,8 +53,10 @@ class Specimens:
     joint: Array
     inrush: Array
     capacitance: Array
+    shunt: Array
     dropper_resistance: Array
     dropper_short: Array
+    shunt_short: Array
     bleeder: Array
     junction: Array
     zener: Array
@@ -104,17 +106,22 @@ def take(specimens: Specimens, index: slice | NDArray[np.intp]) -> Specimens:
 
 ARRAYS = tuple(field.name for field in fields(Specimens) if field.name not in ("shape", "frequency"))
 
-Draw = Callable[[], Array]
-"""Gives the next coordinate of the sequence, shape (n,), evenly over 0 to 1."""
+Near = Mapping[str, tuple[float, float]]
+"""Parts, by name, of which it is known that they lie between two values [V, ohm, F or A]."""
 
 
 class _Drawer:
-    """Hands out one coordinate of the sequence a part, always in the same order; 0.5 everywhere for a nominal board."""
+    """Hands out one coordinate of the sequence a part, always in the same order; 0.5 everywhere for a nominal board.
 
-    def __init__(self, count: int, spread: bool) -> None:
+    A part in `near` is drawn between those values only; `log_share` is the logarithm of the share of all boards that leaves.
+    """
+
+    def __init__(self, count: int, spread: bool, near: Near | None = None) -> None:
         self.count = count
+        self.log_share = 0.0
         self._numbers = iter(range(FIRST_PART, LAST_PART))
         self._spread = spread
+        self._near = near or {}
 
     def _next(self) -> Array:
         return coordinate(next(self._numbers), self.count)
@@ -123,19 +130,31 @@ class _Drawer:
         """Evenly from `low` to `high`; their middle for a nominal board."""
         return low + (high - low) * (self._next() if self._spread else np.full(self.count, 0.5))
 
-    def part(self, value: Maybe, tolerance: float, unknown: tuple[float, float]) -> Array:
+    def part(self, name: str, value: Maybe, tolerance: float, unknown: tuple[float, float]) -> Array:
         """A marked value within its tolerance, or evenly in the logarithm over `unknown` where it cannot be read."""
         even = self._next()
         if isinstance(value, Unknown):
-            low, high = np.log(unknown)
+            low, high = self._narrowed(name, float(np.log(unknown[0])), float(np.log(unknown[1])), logarithmic=True)
             return np.asarray(np.exp(low + (high - low) * even))
-        share = 2.0 * even - 1.0 if self._spread else np.zeros(self.count)
-        return value * (1.0 + tolerance * share)
+        if not self._spread:
+            return np.full(self.count, value)
+        low, high = self._narrowed(name, value * (1.0 - tolerance), value * (1.0 + tolerance), logarithmic=False)
+        return np.asarray(low + (high - low) * even)
+
+    def _narrowed(self, name: str, low: float, high: float, *, logarithmic: bool) -> tuple[float, float]:
+        """What is left of a range by what is known of the part; all of it where the two have nothing in common."""
+        if name not in self._near:
+            return low, high
+        near = [float(np.log(max(end, 1e-18))) if logarithmic else end for end in self._near[name]]
+        left = max(low, near[0]), min(high, near[1])
+        if left[0] >= left[1]:
+            return low, high
+        self.log_share += float(np.log((left[1] - left[0]) / (high - low)))
+        return left
 
     def constant(self, value: float) -> Array:
         """The same for all."""
         return np.full(self.count, value)
-
 
 
 def as_marked(board: Board, count: int = 64) -> Specimens:
@@ -155,6 +174,15 @@ def population(board: Board, count: int, mains_spread: float | None = None) -> S
     """
     spread = board.mains.variation if mains_spread is None else mains_spread
     return _build(board, _Drawer(count, spread=True), spread, warm=True)
+
+
+def population_near(board: Board, count: int, mains_spread: float, near: Near) -> tuple[Specimens, float]:
+    """A `population` whose parts in `near` are drawn between those values, and the logarithm of its share [1] of all boards.
+
+    Names are those of the case file: dropper, inrush, zener:RAIL, reservoir:RAIL, feed:RAIL, load:NAME.
+    """
+    draw = _Drawer(count, spread=True, near=near)
+    return _build(board, draw, mains_spread, warm=True), draw.log_share
 
 
 def _build(board: Board, draw: _Drawer, mains_spread: float, warm: bool) -> Specimens:
@@ -181,20 +209,27 @@ def _mains_side(board: Board, draw: _Drawer) -> dict[str, Array]:
     capacitance, resistance = draw.constant(0.0), draw.constant(np.inf)
     if dropper.resistance is not None:
         tolerance = known.RESISTOR_TOLERANCE if dropper.tolerance is None else dropper.tolerance
-        resistance = draw.part(dropper.resistance, tolerance, known.UNKNOWN_DROPPER_RESISTANCE)
+        resistance = draw.part("dropper", dropper.resistance, tolerance, known.UNKNOWN_DROPPER_RESISTANCE)
     elif dropper.capacitance is not None:
-        capacitance = draw.part(dropper.capacitance, tolerance, known.UNKNOWN_DROPPER)
+        capacitance = draw.part("dropper", dropper.capacitance, tolerance, known.UNKNOWN_DROPPER)
+    shunt = draw.constant(0.0)
+    if dropper.shunt_capacitance is not None:
+        shunt = draw.part("shunt", dropper.shunt_capacitance, tolerance, known.UNKNOWN_DROPPER)
     in_path = draw.constant(0.0)
     if inrush is not None:
-        in_path = draw.part(inrush.resistance, _or(inrush.tolerance, known.RESISTOR_TOLERANCE), known.UNKNOWN_INRUSH)
+        tolerance = _or(inrush.tolerance, known.RESISTOR_TOLERANCE)
+        in_path = draw.part("inrush", inrush.resistance, tolerance, known.UNKNOWN_INRUSH)
     across = draw.constant(np.inf)
     if bleeder is not None:
-        one = draw.part(bleeder.resistance, _or(bleeder.tolerance, known.RESISTOR_TOLERANCE), known.UNKNOWN_BLEEDER)
+        tolerance = _or(bleeder.tolerance, known.RESISTOR_TOLERANCE)
+        one = draw.part("bleeder", bleeder.resistance, tolerance, known.UNKNOWN_BLEEDER)
         across = one * (1 if isinstance(bleeder.resistance, Unknown) else bleeder.in_series)
     return {
         "capacitance": capacitance,
+        "shunt": shunt,
         "dropper_resistance": resistance,
         "dropper_short": draw.constant(np.inf),
+        "shunt_short": draw.constant(np.inf),
         "inrush": in_path,
         "bleeder": across,
         "junction": draw.constant(float(Junction.GOOD)),
@@ -218,14 +253,15 @@ def _rails(board: Board, draw: _Drawer, warm: bool) -> dict[str, Array]:
 def _zener(rail: Rail, draw: _Drawer) -> Array:
     if rail.zener is None:
         return draw.constant(np.inf)
-    return draw.part(rail.zener.voltage, _or(rail.zener.tolerance, known.ZENER_TOLERANCE), known.UNKNOWN_ZENER)
+    tolerance = _or(rail.zener.tolerance, known.ZENER_TOLERANCE)
+    return draw.part(f"zener:{rail.name}", rail.zener.voltage, tolerance, known.UNKNOWN_ZENER)
 
 
 def _reservoir(rail: Rail, draw: _Drawer) -> Array:
     if rail.reservoir is None:
         return draw.constant(0.0)
     tolerance = _or(rail.reservoir.tolerance, known.RESERVOIR_TOLERANCE)
-    return draw.part(rail.reservoir.capacitance, tolerance, known.UNKNOWN_RESERVOIR)
+    return draw.part(f"reservoir:{rail.name}", rail.reservoir.capacitance, tolerance, known.UNKNOWN_RESERVOIR)
 
 
 def _esr(capacitance: Array, draw: _Drawer, warm: bool) -> Array:
@@ -238,7 +274,8 @@ def _esr(capacitance: Array, draw: _Drawer, warm: bool) -> Array:
 def _feed(rail: Rail, draw: _Drawer) -> Array:
     if rail.feed_resistance is None:
         return draw.constant(np.inf)
-    return draw.part(rail.feed_resistance, _or(rail.feed_tolerance, known.RESISTOR_TOLERANCE), known.UNKNOWN_FEED)
+    tolerance = _or(rail.feed_tolerance, known.RESISTOR_TOLERANCE)
+    return draw.part(f"feed:{rail.name}", rail.feed_resistance, tolerance, known.UNKNOWN_FEED)
 
 
 def _loads(board: Board, draw: _Drawer) -> dict[str, Array]:
@@ -278,13 +315,13 @@ def _load_resistance(load: Load, draw: _Drawer) -> Array:
     value = resistance_of(load)
     if value is None:
         return draw.constant(np.inf)
-    return draw.part(value, load_tolerance(load), known.UNKNOWN_RESISTANCE)
+    return draw.part(f"load:{load.name}", value, load_tolerance(load), known.UNKNOWN_RESISTANCE)
 
 
 def _load_current(load: Load, draw: _Drawer) -> Array:
     if load.current is None:
         return draw.constant(0.0)
-    return draw.part(load.current, load_tolerance(load), known.UNKNOWN_CURRENT)
+    return draw.part(f"load:{load.name}", load.current, load_tolerance(load), known.UNKNOWN_CURRENT)
 
 
 def _or(stated: float | None, assumed: float) -> float:

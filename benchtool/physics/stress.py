@@ -71,7 +71,7 @@ class Discharge:
             return False
         if self.to_limit is not None:
             return self.to_limit > known.PLUG_LIMIT_SECONDS
-        return None if self.has_bleeder or self.capacitance is None else True
+        return None if self.has_bleeder else True
 
 
 def discharge_of(board: Board) -> Discharge:
@@ -91,15 +91,17 @@ def discharge_of(board: Board) -> Discharge:
         left=left,
         wait=wait,
         energy=None if capacitance is None else 0.5 * capacitance * start**2,
-        limited=_limited(board, capacitance),
+        limited=_limited(board),
         has_bleeder=board.bleeder is not None,
     )
 
 
-def _limited(board: Board, capacitance: float | None) -> bool:
-    if board.connected_by == "fixed" or board.dropper.kind == "resistor":
+def _limited(board: Board) -> bool:
+    """The limit speaks of the rated capacitance; one that cannot be read may be over the exempt one."""
+    marked = board.dropper.capacitance
+    if board.connected_by == "fixed" or marked is None:
         return False
-    return capacitance is None or capacitance > known.PLUG_EXEMPT
+    return isinstance(marked, Unknown) or max(marked, board.dropper.fitted or 0.0) > known.PLUG_EXEMPT
 
 
 def _highest_capacitance(board: Board) -> float | None:
