@@ -1,0 +1,123 @@
+"""What the records of a verdict are called in words, for people: readings, states, percentages, ranges.
+
+Why apart: the report, the screens and the paper say the same thing in the same words.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+
+from benchtool.board import Board
+from benchtool.catalogue.readings import READING_KINDS
+from benchtool.diagnosis.evidence import Expected
+from benchtool.observed import Check, Reading
+from benchtool.quantities import show, show_range
+
+CANNOT_TELL = "cannot tell"
+LISTED_STATES = 2
+"""Loads named in a state; more of them are counted."""
+
+
+def percent(probability: float) -> str:
+    """A probability [1] in whole percent; what is not certain is never 0 or 100."""
+    if probability >= 0.995:
+        return "over 99 %"
+    if probability < 0.005:
+        return "under 1 %"
+    return f"{int(probability * 100.0 + 0.5)} %"
+
+
+def milliamps(current: float, places: int = 1) -> str:
+    """A current [A] as a bare number of milliamperes."""
+    return f"{current * 1e3:.{places}f}"
+
+
+@dataclass(frozen=True, slots=True)
+class Words:
+    """The words for one board; `short`: its short names, for narrow pages."""
+
+    board: Board
+    short: bool = False
+
+    def rail(self, name: str) -> str:
+        """A rail's name."""
+        rail = self.board.rail(name)
+        return rail.short if self.short and rail.short is not None else name
+
+    def load(self, name: str) -> str:
+        """A load's name."""
+        found = next(load for load in self.board.loads if load.name == name)
+        return found.short if self.short and found.short is not None else name
+
+    def state(self, on: tuple[str, ...] | None) -> str:
+        """Which switched loads are on: "heater relay on", "all off"; nothing where the board switches none."""
+        switched = self.board.switched_loads()
+        if on is None or not switched:
+            return ""
+        if not on:
+            return "all off"
+        if len(on) > 1 and set(on) == set(switched):
+            return "all on"
+        if len(on) > LISTED_STATES:
+            return f"{len(on)} loads on"
+        return f"{' and '.join(self.load(name) for name in on)} on"
+
+    def check(self, check: Check) -> str:
+        """A check in words: "relay rail, heater relay on"."""
+        kind = READING_KINDS[check.what]
+        rail = "" if check.rail is None else self.rail(check.rail)
+        load = "" if check.load is None else self.load(check.load)
+        label = kind.label.format(rail=rail, load=load)
+        where = [name for name in (rail, load) if name] if kind.name == "look" else []
+        return ", ".join([label, *where, *self._conditions(check)])
+
+    def _conditions(self, check: Check) -> Iterator[str]:
+        if state := self.state(check.on):
+            yield state
+        if check.lifted:
+            yield "one leg lifted"
+        elif check.what == "dropper-capacitance" and self.board.bleeder is not None:
+            yield "across the bleeder"
+        if check.when == "warm":
+            yield "warm"
+        if check.clamp is not None:
+            yield f"up to {show(check.clamp, 'A')}"
+        if check.limit is not None:
+            yield f"up to {show(check.limit, 'V')}"
+
+
+def value_of(reading: Reading) -> str:
+    """What was read: "14.14 V", "open"."""
+    unit = READING_KINDS[reading.what].unit
+    if isinstance(reading.value, float) and unit is not None:
+        return show(reading.value, unit, digits=4)
+    return ", ".join(reading.value) if isinstance(reading.value, tuple) else str(reading.value)
+
+
+def expectation(expected: Expected, what: str) -> str:
+    """What should be read: "612 to 748 nF", "under 0.6 Ω" where a meter cannot tell the low end from nothing, "yes or no"."""
+    kind = READING_KINDS[what]
+    if expected.low is None or expected.high is None or kind.unit is None:
+        return " or ".join(expected.words)
+    if expected.low <= 0.0 <= kind.low:
+        return f"under {show(expected.high, kind.unit)}"
+    return show_range(expected.low, expected.high, kind.unit, compact=True)
+
+
+def band(low: float | None, high: float | None, unit: str, digits: int = 3) -> str:
+    """A range [unit], or that it cannot be told."""
+    return CANNOT_TELL if low is None or high is None else show_range(low, high, unit, digits=digits, compact=True)
+
+
+def judged(reading: Reading, healthy: Expected) -> str:
+    """How a reading stands to a healthy board: low, ok, high, or bad where words differ; nothing for a look."""
+    if reading.what == "look":
+        return ""
+    if healthy.low is None or healthy.high is None:
+        return "ok" if reading.value in healthy.words else "bad"
+    if not isinstance(reading.value, float):
+        return "bad"
+    if reading.value < healthy.low:
+        return "low"
+    return "high" if reading.value > healthy.high else "ok"
