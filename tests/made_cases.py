@@ -29,11 +29,11 @@ from benchtool.board import (
     Zener,
 )
 from benchtool.case import Case, Repair, Replaced, Safe, Ticket
-from benchtool.casecheck import DROPPER_KEYS, FEED_KEYS, LOAD_KEYS, Keys, part_names
+from benchtool.casefile.check import DROPPER_KEYS, FEED_KEYS, LOAD_KEYS, Keys, part_names
+from benchtool.casefile.schema import fields_of
 from benchtool.catalogue.accepted import accepted, lacking
 from benchtool.catalogue.readings import READING_KINDS, ReadingKind
 from benchtool.observed import Accuracy, AccuracyOf, Meter, Reading
-from benchtool.schema import fields_of
 
 SIGNS = "ab Z09_-'\"\\#[]{}=,.:;%äΩµ電🔌"
 WORDS = st.text(SIGNS, min_size=1, max_size=12).filter(lambda word: word.strip() != "")

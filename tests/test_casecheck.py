@@ -10,7 +10,7 @@ import pytest
 
 from benchtool import casefile
 from benchtool.board import Board
-from benchtool.casecheck import part_names
+from benchtool.casefile.check import part_names
 from benchtool.catalogue.accepted import accepted, lacking
 from benchtool.catalogue.readings import READING_KINDS, READINGS
 from benchtool.errors import CaseError, Problem

@@ -10,9 +10,9 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from benchtool import casefile
+from benchtool.casefile.readingline import parse_reading
 from benchtool.errors import CaseError, Problem
 from benchtool.observed import Reading
-from benchtool.readingtext import parse_reading
 
 CONTRACT = (Path(__file__).parent / "data" / "contract.toml").read_text(encoding="utf-8")
 BOARD = casefile.loads(CONTRACT).board

@@ -5,9 +5,9 @@ from __future__ import annotations
 from collections.abc import Sequence
 
 from benchtool.board import Board
+from benchtool.casefile import parse_reading
 from benchtool.errors import CaseError, Problem
 from benchtool.observed import Reading
-from benchtool.readingtext import parse_reading
 
 OPTION = "--reading"
 

@@ -8,8 +8,8 @@ from __future__ import annotations
 
 import os
 
+from benchtool.casefile import file_name, reason_of
 from benchtool.errors import FileError
-from benchtool.savefile import file_name, reason_of
 
 TEMPLATE = """\
 # A case for benchtool: one board on the bench. Judge it with: benchtool assess THIS-FILE

@@ -16,13 +16,13 @@ from typing import Annotated
 
 from benchtool.board import Board, Mains, Table, Whole
 from benchtool.case import Case, Meter, Repair, Safe, Ticket
-from benchtool.casecheck import check_board, check_repair
-from benchtool.casereadings import read_readings, reading_to_toml
+from benchtool.casefile.check import check_board, check_repair
+from benchtool.casefile.readings import read_readings, reading_to_toml
+from benchtool.casefile.save import file_name, reason_of, save_text
+from benchtool.casefile.scan import comments_of, has_long_key
+from benchtool.casefile.schema import Findings, Place, Toml, read_record, read_table, stand_in_record, to_toml
 from benchtool.errors import CaseError, FileError, Problem
 from benchtool.printable import printable, quoted, shown
-from benchtool.savefile import file_name, reason_of, save_text
-from benchtool.schema import Findings, Place, Toml, read_record, read_table, stand_in_record, to_toml
-from benchtool.tomlscan import comments_of, has_long_key
 
 FORMAT = 1
 LARGEST = 1_000_000
@@ -75,7 +75,7 @@ def dump(case: Case, path: str | os.PathLike[str]) -> None:
 
 def dumps(case: Case) -> str:
     """The case as a text: its own, with comments, order and spelling, changed only where the case differs."""
-    from benchtool.casetext import edited, fresh  # only here: tomlkit is slow to import
+    from benchtool.casefile.render import edited, fresh  # only here: tomlkit is slow to import
 
     new = to_data(case)
     if case.text is None:

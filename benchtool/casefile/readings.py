@@ -12,14 +12,14 @@ from dataclasses import replace
 
 from benchtool.board import Board
 from benchtool.case import Reading, ReadingValue
-from benchtool.casecheck import exists
+from benchtool.casefile.check import exists
+from benchtool.casefile.schema import Findings, Place, Toml, entries_of, read_record, to_toml
+from benchtool.casefile.values import bounds_text, in_quotes, quantity_text
 from benchtool.catalogue.accepted import accepted, lacking
 from benchtool.catalogue.readings import READING_KINDS, ReadingKind
 from benchtool.errors import QuantityError
 from benchtool.printable import listed, names_listed, quoted, shown
 from benchtool.quantities import parse
-from benchtool.schema import Findings, Place, Toml, entries_of, read_record, to_toml
-from benchtool.values import bounds_text, in_quotes, quantity_text
 
 MOST_READINGS = 500
 QUALIFIERS = ("rail", "load", "on", "lifted", "clamp", "limit")

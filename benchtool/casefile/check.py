@@ -21,8 +21,8 @@ from benchtool.board import (
     resistance_of,
 )
 from benchtool.case import Repair
+from benchtool.casefile.schema import Findings, Place
 from benchtool.printable import listed, names_listed, quoted
-from benchtool.schema import Findings, Place
 
 BOARD = Place().inside("board")
 RESERVED = (COMMON, RECTIFIER)

@@ -11,12 +11,12 @@ from collections.abc import Sequence
 
 from benchtool.board import Board
 from benchtool.case import Reading
-from benchtool.casereadings import names_of, read_reading
+from benchtool.casefile.readings import names_of, read_reading
+from benchtool.casefile.schema import Findings, Place
 from benchtool.catalogue.readings import READING_KINDS, ReadingKind
 from benchtool.errors import CaseError, Problem, QuantityError
 from benchtool.printable import quoted
 from benchtool.quantities import parse
-from benchtool.schema import Findings, Place
 
 LONGEST = 500
 """Longest line that is taken for a reading [characters]."""

@@ -13,9 +13,9 @@ from dataclasses import MISSING, dataclass, fields
 from typing import Any, TypeVar, get_type_hints
 
 from benchtool.board import Table, Tables
+from benchtool.casefile.values import Rule, describe, read, stand_in, write
 from benchtool.errors import CaseError, Problem, QuantityError
 from benchtool.printable import listed, printable, quoted, shown
-from benchtool.values import Rule, describe, read, stand_in, write
 
 Path = tuple[str | int, ...]
 Toml = Mapping[str, object]
