@@ -6,16 +6,15 @@ from dataclasses import dataclass
 
 from benchtool.case import Case
 from benchtool.catalogue.faults import UNEXPLAINED
-from benchtool.catalogue.readings import READING_KINDS
 from benchtool.diagnosis.checks import NextCheck
 from benchtool.diagnosis.disagreement import Disagreement
 from benchtool.diagnosis.effective import Effective
-from benchtool.diagnosis.evidence import Because, Expected
+from benchtool.diagnosis.evidence import Because
 from benchtool.diagnosis.hypotheses import Hypothesis, Struck
 from benchtool.diagnosis.safety import Finding
 from benchtool.observed import Check, Reading
 from benchtool.physics.budget import Budget
-from benchtool.quantities import show, show_range
+from benchtool.words import Words, expected_text, read_text
 
 FORMAT = 1
 
@@ -156,27 +155,6 @@ def _because(row: Because) -> Plain:
     }
 
 
-def read_text(reading: Reading, *, ascii: bool = False) -> str:
-    """What was read, in words: "182 nF, lifted"."""
-    unit = READING_KINDS[reading.what].unit
-    if isinstance(reading.value, float) and unit is not None:
-        text = show(reading.value, unit, digits=4, ascii=ascii)
-    elif isinstance(reading.value, tuple):
-        text = ", ".join(reading.value)
-    else:
-        text = str(reading.value)
-    remarks = [word for word, said in (("lifted", reading.lifted), ("warm", reading.when == "warm")) if said]
-    return ", ".join([text, *remarks])
-
-
-def expected_text(expected: Expected, what: str, *, ascii: bool = False) -> str:
-    """What should be read, in words: "612 nF to 748 nF", "open", "yes or no"."""
-    unit = READING_KINDS[what].unit
-    if expected.low is None or expected.high is None or unit is None:
-        return " or ".join(expected.words)
-    return show_range(expected.low, expected.high, unit, ascii=ascii)
-
-
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Assessment:
     """Everything said about one case. Where the physics cannot compute the board, `cannot` says so and the rest is empty."""
@@ -203,7 +181,7 @@ class Assessment:
             "budget": None if self.budget is None else _budget(self.budget),
             "effective": None if self.effective is None else _effective(self.effective),
             "suspects": [suspect.as_dict() for suspect in self.suspects],
-            "disagreements": [_disagreement(item) for item in self.disagreements],
+            "disagreements": [_disagreement(item, Words(self.case.board)) for item in self.disagreements],
             "next_checks": [_next_check(item) for item in self.next_checks],
             "unused_readings": [_check(reading) for reading in self.unused],
             "safety": [_finding(finding) for finding in self.safety],
@@ -264,23 +242,13 @@ def _next_check(item: NextCheck) -> Plain:
     }
 
 
-def _disagreement(item: Disagreement) -> Plain:
+def _disagreement(item: Disagreement, words: Words) -> Plain:
     return {
         "first": {**_check(item.first), "read": read_text(item.first)},
         "second": {**_check(item.second), "read": read_text(item.second)},
         "first_implies_for_second": None if item.implied is None else list(item.implied),
-        "sentence": disagreement_sentence(item),
+        "sentence": words.disagreement(item),
     }
-
-
-def disagreement_sentence(item: Disagreement, *, ascii: bool = False) -> str:
-    """What the one reading implies for the other, in words."""
-    unit = READING_KINDS[item.second.what].unit
-    first, second = read_text(item.first, ascii=ascii), read_text(item.second, ascii=ascii)
-    if item.implied is None or unit is None:
-        return f"{first} and {second} do not go together with any single fault"
-    implied = show_range(*item.implied, unit, ascii=ascii)
-    return f"{first} would mean {implied} where {second} was read"
 
 
 def _finding(finding: Finding) -> Plain:

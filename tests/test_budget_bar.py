@@ -22,7 +22,7 @@ from benchtool.report.bar import (
     ticks,
 )
 from benchtool.report.layout import Page, cells
-from benchtool.report.words import Words
+from benchtool.words import Words
 
 STACKED = """
 format = 1

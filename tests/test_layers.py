@@ -18,6 +18,7 @@ FLOORS: list[set[str]] = [
     {"report"},
     {"assessment"},
     {"result"},
+    {"words"},
     {"casefile"},
     {"case"},
     {"diagnosis"},

@@ -24,8 +24,8 @@ from benchtool.report.evidence import says
 from benchtool.report.layout import Line, Page, cells, paragraph, table
 from benchtool.report.template import TEMPLATE
 from benchtool.report.text import report_lines
-from benchtool.report.words import Words, expectation, judged, percent
 from benchtool.result import Assessment
+from benchtool.words import Words, expectation, judged, percent
 from tests.assessed import SAMPLES, assessed_once, assessed_sample, sample_path
 
 WIDTHS = (80, 40, 32)

@@ -17,7 +17,8 @@ from benchtool.observed import Check
 from benchtool.physics import branches
 from benchtool.physics import constants as known
 from benchtool.physics.bench import Bench
-from benchtool.physics.laws import Array, Flags
+from benchtool.physics.laws import Array, Flags, copper_ratio
+from benchtool.physics.mean_value import COIL_WARM_KELVIN
 from benchtool.physics.specimens import Junction, Specimens, Switch
 
 RAIL_ERROR, RAIL_ERROR_FLOOR = 0.008, 0.05
@@ -133,13 +134,15 @@ def runs(bench: Bench, board: Board, load: int, on: tuple[str, ...], *, warm: bo
 
 
 def _enough(bench: Bench, board: Board, load: int, on: tuple[str, ...], warm: bool) -> Array:
-    """Whether the load gets voltage enough to act, 0 or 1, (n,)."""
+    """Whether the load gets voltage enough to act in the troughs of the ripple too, 0 or 1, (n,)."""
     specimens, record = bench.specimens, board.loads[load]
-    voltage = bench.settled(on, warm=warm).load_voltage[load]
+    settled = bench.settled(on, warm=warm)
+    voltage = settled.load_voltage[load] - settled.ripple_pp[board.rail_index(record.rail)] / 2.0
     intact = specimens.load_open[load] == 0.0
     if record.kind == "coil":
         nominal = record.nominal_voltage or float(nominal_voltage(board, board.rail(record.rail)) or 0.0)
-        return np.asarray(intact & (voltage >= specimens.pull_in[load] * nominal), dtype=float)
+        pull_in = specimens.pull_in[load] * nominal * (float(copper_ratio(25.0 + COIL_WARM_KELVIN)) if warm else 1.0)
+        return np.asarray(intact & (voltage >= pull_in), dtype=float)
     if record.kind == "led":
         return np.asarray(intact & (voltage >= known.LED_LIGHTS_FROM * specimens.load_forward[load]), dtype=float)
     return np.asarray(intact & (voltage >= _alive_from(board, board.rail_index(record.rail))), dtype=float)
@@ -182,13 +185,15 @@ def _dropper_capacitance(bench: Bench, board: Board, check: Check) -> Shown:
         value = value * np.where(np.isinf(specimens.bleeder), 1.0, x / -np.expm1(-x))
     mark = board.dropper.capacitance
     floor = 0.02 * mark if isinstance(mark, float) else 1e-9
-    return Shown(value, opened=specimens.capacitance < floor, shorted=np.isfinite(specimens.dropper_short))
+    shorted = np.isfinite(specimens.dropper_short)
+    return Shown(np.where(shorted, np.inf, value), opened=specimens.capacitance < floor, shorted=shorted)
 
 
 def _shunt_capacitance(bench: Bench, board: Board, check: Check) -> Shown:
     value, mark = bench.specimens.shunt, board.dropper.shunt_capacitance
     floor = 0.02 * mark if isinstance(mark, float) else 1e-9
-    return Shown(value, opened=value < floor, shorted=np.isfinite(bench.specimens.shunt_short))
+    shorted = np.isfinite(bench.specimens.shunt_short)
+    return Shown(np.where(shorted, np.inf, value), opened=value < floor, shorted=shorted)
 
 
 def _fuse(bench: Bench, board: Board, check: Check) -> Shown:
@@ -297,8 +302,9 @@ def _branch(specimens: Specimens, number: int, voltage: Array) -> Array:
 
 def _coil(bench: Bench, board: Board, check: Check) -> Shown:
     number = _load(board, check)
-    value = bench.specimens.load_resistance[number]
-    return Shown(value, 0.005 * value, opened=bench.specimens.load_open[number] > 0.0, shorted=value < 5.0)
+    specimens = bench.specimens
+    value = np.where(specimens.load_open[number] > 0.0, np.inf, specimens.load_resistance[number])
+    return _resistance(value, 0.005)
 
 
 def _switch(bench: Bench, board: Board, check: Check) -> Shown:

@@ -7,7 +7,7 @@ as the readings leave them. Coarse: numbers are sorted into classes as wide as t
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -50,7 +50,8 @@ def candidates(board: Board, taken: Sequence[Check]) -> Iterator[Check]:
     for kind in READINGS:
         if kind.name in SHOWS and kind.name not in ELSEWHERE:
             for check in _places(kind, board):
-                if _same(check) not in done:
+                better = _same(replace(check, lifted=True)) if check.what == "dropper-capacitance" else _same(check)
+                if not {_same(check), better} & done:
                     yield check
 
 

@@ -35,19 +35,32 @@ def disagreements(posterior: Posterior) -> tuple[Disagreement, ...]:
 
 
 def _found(posterior: Posterior, singles: list[Evidence]) -> Iterator[Disagreement]:
-    uniform = posterior.uniform
-    for first, second in combinations(range(len(posterior.readings)), 2):
-        together = max(_log_joint(item, (first, second)) for item in singles)
-        apart = uniform[first] + uniform[second]
-        possible = all(max(_log_joint(item, (row,)) for item in singles) > uniform[row] for row in (first, second))
-        if possible and together < apart - CLEARLY:
-            readings = posterior.readings
+    uniform, readings = posterior.uniform, posterior.readings
+    if len(readings) < 2:
+        return
+    together = np.max([_log_pairs(item) for item in singles], axis=0)
+    alone = np.max([_log_singles(item) for item in singles], axis=0)
+    for first, second in combinations(range(len(readings)), 2):
+        possible = alone[first] > uniform[first] and alone[second] > uniform[second]
+        if possible and together[first, second] < uniform[first] + uniform[second] - CLEARLY:
             yield Disagreement(readings[first], readings[second], _implied(posterior, singles, first, second))
 
 
-def _log_joint(item: Evidence, rows: tuple[int, ...]) -> float:
-    """Logarithm of the likelihood of some of the readings alone."""
-    return log_sum(item.densities[list(rows)].sum(axis=0) + item.log_prior)
+def _log_pairs(item: Evidence) -> Array:
+    """Logarithm of the likelihood of every two readings together, (readings, readings)."""
+    tops = item.densities.max(axis=1)
+    shares = np.exp(item.densities - tops[:, None])
+    joint = (shares * np.exp(item.log_prior)) @ shares.T
+    return np.asarray(np.log(np.maximum(joint, 1e-300)) + tops[:, None] + tops)
+
+
+def _log_singles(item: Evidence) -> Array:
+    """Logarithm of the likelihood of every reading alone, (readings,)."""
+    return np.array([_log_alone(item, row) for row in range(len(item.densities))])
+
+
+def _log_alone(item: Evidence, row: int) -> float:
+    return log_sum(item.densities[row] + item.log_prior)
 
 
 def _implied(posterior: Posterior, singles: list[Evidence], first: int, second: int) -> tuple[float, float] | None:
@@ -55,7 +68,7 @@ def _implied(posterior: Posterior, singles: list[Evidence], first: int, second: 
     reading = posterior.readings[second]
     if READING_KINDS[reading.what].unit is None or not isinstance(reading.value, float):
         return None
-    likeliest = max(singles, key=lambda item: np.log(item.hypothesis.weight) + _log_joint(item, (first,)))
+    likeliest = max(singles, key=lambda item: np.log(item.hypothesis.weight) + _log_alone(item, first))
     shown = SHOWS[reading.what](likeliest.bench, posterior.board, reading.check).value
     assert shown is not None
     weights = np.exp(np.maximum(likeliest.densities[first] + likeliest.log_prior, LEAST))

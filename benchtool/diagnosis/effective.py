@@ -41,7 +41,10 @@ BY_LINE = ("line-current", "inrush-voltage")
 
 @dataclass(frozen=True, slots=True)
 class Effective:
-    """Back-solved current into the first rail [A] and dropper [F]; None where only a bound, or nothing, is known."""
+    """Back-solved current into the first rail [A] and dropper [F]; None where only a bound, or nothing, is known.
+
+    `smooth`: whether the first rail is; of one that is not the mean tells only the least supply.
+    """
 
     capacitance: float | None = None
     capacitance_low: float | None = None
@@ -49,6 +52,7 @@ class Effective:
     current: float | None = None
     current_low: float | None = None
     current_high: float | None = None
+    smooth: bool = True
     readings: tuple[Reading, ...] = ()
 
     @property
@@ -115,7 +119,10 @@ class _Solver:
         if band == "below" and isinstance(reading.value, float):
             whole = self._by_rail(reading, reading.value)
             return Effective(
-                capacitance_low=whole.capacitance_low, current_low=whole.current_low, readings=whole.readings
+                capacitance_low=whole.capacitance_low,
+                current_low=whole.current_low,
+                smooth=False,
+                readings=whole.readings,
             )
         if band != "within":
             return None

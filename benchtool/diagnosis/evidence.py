@@ -103,10 +103,10 @@ def _alone(item: Evidence, row: int) -> float:
 
 
 def fails_to_run(item: Evidence, board: Board) -> bool:
-    """Whether boards with this hypothesis, as the readings leave them, mostly fail to run their marked loads."""
+    """Whether boards with this hypothesis, as the readings leave them, mostly fail to run their marked loads once warm."""
     on = board.switched_loads()
     works = np.ones(item.bench.specimens.count)
     for load in range(len(board.loads)):
-        meant, unasked = runs(item.bench, board, load, on)
+        meant, unasked = runs(item.bench, board, load, on, warm=True)
         works = np.minimum(works, meant * (1.0 - unasked))
     return float(np.sum(item.shares() * works)) < 0.5

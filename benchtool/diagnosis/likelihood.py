@@ -19,6 +19,8 @@ from benchtool.physics.laws import Array, two_sigma
 
 LEAST = -34.0
 """Logarithm of the least density: a gross mistake is always possible."""
+WORD_FOR_NUMBER = 0.5
+"""Chance that a number as good as the word (next to no capacitance, a few millivolts) is noted as the word."""
 SMOOTHING = 0.012
 """One sigma, as a share, below which a number is not told apart: as coarse as the specimens are drawn."""
 LOGARITHMIC = ("ohm", "F", "A")
@@ -57,7 +59,7 @@ def word_chance(shown: Shown, word: str) -> Array:
     flag = shown.opened if word == "open" else shown.shorted
     if flag is None:
         return np.full(shown.value.shape, 1.0 - SURE)
-    return np.where(flag, SURE, 1e-5)
+    return np.where(flag, np.where(np.isfinite(shown.value), WORD_FOR_NUMBER, SURE), 1e-5)
 
 
 def _number(shown: Shown, value: float, kind: ReadingKind, meter: Meter) -> Array:
@@ -68,6 +70,9 @@ def _number(shown: Shown, value: float, kind: ReadingKind, meter: Meter) -> Arra
     density = -0.5 * ((value - centre) / sigma) ** 2 - np.log(sigma * np.sqrt(2.0 * np.pi))
     if kind.unit in LOGARITHMIC:
         density = density + np.log(max(abs(value), SMALLEST[kind.unit]))
+    for flag in (shown.opened, shown.shorted):
+        if flag is not None and kind.words:
+            density = density + np.where(flag, np.log(1.0 - WORD_FOR_NUMBER), 0.0)
     return np.where(finite, density, LEAST)
 
 

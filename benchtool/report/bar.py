@@ -15,7 +15,7 @@ from benchtool.physics import constants as known
 from benchtool.physics.budget import Budget, demand
 from benchtool.physics.specimens import as_marked
 from benchtool.report.layout import IN_ASCII, Line, Page, cells, clipped, padded, paragraph
-from benchtool.report.words import CANNOT_TELL, Words, milliamps
+from benchtool.words import CANNOT_TELL, Words, milliamps
 
 CELL_SIZES = (1e-4, 2e-4, 5e-4, 1e-3, 2e-3, 5e-3, 1e-2, 2e-2)
 """Currents that one cell may stand for [A]."""

@@ -8,15 +8,14 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator, Sequence
 
-from benchtool.catalogue.readings import READING_KINDS
 from benchtool.diagnosis.checks import NextCheck
 from benchtool.diagnosis.disagreement import Disagreement
 from benchtool.diagnosis.evidence import Because
-from benchtool.quantities import show, show_range
+from benchtool.quantities import show
 from benchtool.report.bar import SURE, page_bar
 from benchtool.report.layout import Line, Page, padded, paragraph, table
-from benchtool.report.words import CANNOT_TELL, Words, band, expectation, judged, percent, value_of
 from benchtool.result import RailState, State, Suspect
+from benchtool.words import CANNOT_TELL, Words, band, expectation, judged, percent, value_of
 
 LISTED = 6
 """Suspects listed one by one."""
@@ -125,17 +124,8 @@ def says(row: Because) -> str:
 
 def disagreement_lines(items: Sequence[Disagreement], words: Words, page: Page) -> list[Line]:
     """Every pair of readings that no single fault reconciles, and what the one means for the other."""
-    sentences = [_disagreement(item, words) for item in items]
+    sentences = [words.disagreement(item) for item in items]
     return [line for sentence in sentences for line in paragraph(page, sentence, first="DISAGREE  ", rest="  ")]
-
-
-def _disagreement(item: Disagreement, words: Words) -> str:
-    first = f"{words.check(item.first)}: {value_of(item.first)}"
-    second, read = words.check(item.second), value_of(item.second)
-    unit = READING_KINDS[item.second.what].unit
-    if item.implied is None or unit is None:
-        return f"{first}. {second}: {read}. No single fault goes with both."
-    return f"{first} would mean {show_range(*item.implied, unit)} for {second}, which reads {read}."
 
 
 def next_lines(

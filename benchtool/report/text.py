@@ -21,8 +21,8 @@ from benchtool.report.evidence import (
     suspects_lines,
 )
 from benchtool.report.layout import Line, Page, paragraph
-from benchtool.report.words import CANNOT_TELL, Words, percent, value_of
 from benchtool.result import Assessment, Suspect
+from benchtool.words import CANNOT_TELL, Words, percent, value_of
 
 STANDS_OUT = 0.5
 """Probability from which a suspect stands out."""
@@ -164,6 +164,8 @@ def _acts_as(effective: Effective, words: Words) -> str:
         span = f"{show(low, 'F')} to {show(high, 'F')}"
         figure = span if effective.capacitance is None else f"{show(effective.capacitance, 'F')} ({span})"
         return f"The dropper acts as {figure}, from {source}."
+    if low is not None and not effective.smooth:
+        return f"The first rail is not smooth: its mean only says that the dropper is at least {show(low, 'F')}, from {source}."
     if low is not None:
         return f"The first rail regulates, so the dropper is at least {show(low, 'F')}, from {source}. No upper bound yet."
     if effective.current_low is not None and effective.current_high is not None:

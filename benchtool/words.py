@@ -10,6 +10,7 @@ from dataclasses import dataclass
 
 from benchtool.board import Board
 from benchtool.catalogue.readings import READING_KINDS
+from benchtool.diagnosis.disagreement import Disagreement
 from benchtool.diagnosis.evidence import Expected
 from benchtool.observed import Check, Reading
 from benchtool.quantities import show, show_range
@@ -72,6 +73,15 @@ class Words:
         where = [name for name in (rail, load) if name] if kind.name == "look" else []
         return ", ".join([label, *where, *self._conditions(check)])
 
+    def disagreement(self, item: Disagreement) -> str:
+        """What the one reading would mean for the other: "relay rail, relay on: 14.2 V would mean …"."""
+        first = f"{self.check(item.first)}: {value_of(item.first)}"
+        second, read = self.check(item.second), value_of(item.second)
+        unit = READING_KINDS[item.second.what].unit
+        if item.implied is None or unit is None:
+            return f"{first}. {second}: {read}. No single fault goes with both."
+        return f"{first} would mean {show_range(*item.implied, unit)} for {second}, which reads {read}."
+
     def _conditions(self, check: Check) -> Iterator[str]:
         if state := self.state(check.on):
             yield state
@@ -93,6 +103,20 @@ def value_of(reading: Reading) -> str:
     if isinstance(reading.value, float) and unit is not None:
         return show(reading.value, unit, digits=4)
     return ", ".join(reading.value) if isinstance(reading.value, tuple) else str(reading.value)
+
+
+def read_text(reading: Reading) -> str:
+    """What was read with its condition: "182 nF, lifted"."""
+    remarks = [word for word, said in (("lifted", reading.lifted), ("warm", reading.when == "warm")) if said]
+    return ", ".join([value_of(reading), *remarks])
+
+
+def expected_text(expected: Expected, what: str) -> str:
+    """What should be read, both ends with their unit: "612 nF to 748 nF", "open", "yes or no"."""
+    unit = READING_KINDS[what].unit
+    if expected.low is None or expected.high is None or unit is None:
+        return " or ".join(expected.words)
+    return show_range(expected.low, expected.high, unit)
 
 
 def expectation(expected: Expected, what: str) -> str:
