@@ -284,9 +284,9 @@ def test_numbers_that_a_struck_board_shows_can_be_read(name: str) -> None:
             shown = SHOWS[kind.name](bench, board, check)
             assert shown.value is not None
             number = np.isfinite(shown.value)
-            if shown.opened is not None:
-                assert shown.opened[~number].all(), kind.name
-            else:
-                assert number.all(), kind.name
+            worded = np.zeros(number.shape, dtype=bool)
+            for flag in (shown.opened, shown.shorted):
+                worded |= flag if flag is not None else False
+            assert worded[~number].all(), kind.name
             assert (shown.value[number] >= accepted(kind, board)[0]).all(), kind.name
             assert (np.broadcast_to(shown.error, number.shape) >= 0.0).all(), kind.name
