@@ -97,7 +97,6 @@ class Tables:
 Resistance = Quantity("ohm", 1e-3, 1e7, unknown=True)
 Capacitance = Quantity("F", 1e-12, 1e-4, unknown=True)
 LargeCapacitance = Quantity("F", 1e-12, 1.0, unknown=True)
-KnownResistance = Quantity("ohm", 1e-3, 1e7)
 KnownCapacitance = Quantity("F", 1e-12, 1e-4)
 Voltage = Quantity("V", 0.1, 1000.0)
 Power = Quantity("W", 1e-3, 1000.0)

@@ -145,9 +145,6 @@ UNEXPLAINED = "unexplained"
 NO_FAULT_WEIGHT = 80.0
 UNEXPLAINED_WEIGHT = 12.0
 
-LATENT_BLEEDER = 0.040
-"""Share of boards whose bleeder is open or raised without anybody noticing: 30 to 50 per thousand; common practice, no source."""
-
 SOUND_SIGNS = {BROWNED: 1.0 / 3.0, DRY: 0.10, "earlier repair": 0.10}
 """What a look shows on a sound old board; every other word `SOUND_OTHER` of the time. Common practice, no source."""
 SOUND_OTHER = 0.01

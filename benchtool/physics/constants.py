@@ -59,8 +59,6 @@ ZENER_KELVIN_PER_WATT = (50.0, 130.0)
 ZENER_TEMPERATURE_VOLTS = (3.3, 5.1, 6.2, 12.0, 18.0, 24.0)
 ZENER_TEMPERATURE_SHARE = (-6e-4, 0.0, 3e-4, 7e-4, 8.5e-4, 9e-4)
 """A zener's voltage per kelvin, as a share of itself [1/K], at `ZENER_TEMPERATURE_VOLTS` [V]."""
-COIL_KELVIN_PER_WATT = 60.0
-"""Coil's rise over ambient per watt [K/W]; value from memory: a 0.4 W coil runs about 25 K warm."""
 
 # What a part that cannot be read may be: evenly in the logarithm between these
 UNKNOWN_DROPPER = (47e-9, 4.7e-6)
