@@ -15,7 +15,7 @@ from typing import Any
 
 import numpy as np
 
-from tests.reference.circuit import Circuit
+from tests.reference.parts import Circuit
 
 CIRCUITS = Path(__file__).with_name("circuits.json")
 SEED, COUNT = 20611, 40
@@ -173,13 +173,15 @@ def draw_all() -> list[Circuit]:
 # ---- case files ----------------------------------------------------------------------------------
 
 UNITS = {"voltage": "V", "frequency": "Hz", "capacitance": "F", "resistance": "ohm", "current": "A"}
-UNITS |= {"shunt_capacitance": "F", "feed_resistance": "ohm", "forward_voltage": "V"}
+UNITS |= {"shunt_capacitance": "F", "feed_resistance": "ohm", "forward_voltage": "V", "pulse": "s"}
+UNITS |= {"regulated_voltage": "V", "dropout": "V", "ground_current": "A"}
 
 
 def to_case_text(circuit: Circuit) -> str:
     """Return the circuit's board as a case file of format 1; a `fault` entry is not in it.
 
-    Coils are given a nominal voltage, which has no bearing on the electrical figures.
+    Coils are given a nominal voltage, which has no bearing on the electrical figures. What a circuit holds
+    beside its board and mains (loads on, meter, fault) is not in a case file either.
     """
     board = dict(circuit["board"])
     lines = ["format = 1", "", "[mains]", *_table(circuit["mains"]), "", "[board]"]
