@@ -157,23 +157,28 @@ def _assess(arguments: argparse.Namespace) -> int:
 
     from benchtool.assessment import assess
     from benchtool.casefile import dump
+    from benchtool.report.given import given_readings, merged, replaced_lines, saved_lines
+    from benchtool.report.layout import Line
+    from benchtool.report.terminal import write_lines
 
     refused = _cannot_save(arguments)
     if refused:
         _complain(refused)
         return USAGE
     case = _case(arguments.case)
-    if arguments.reading:
-        from benchtool.report.given import given_readings
-
-        case = replace(case, readings=(*case.readings, *given_readings(arguments.reading, case.board)))
+    merge = merged(case.readings, given_readings(arguments.reading, case.board))
+    case = replace(case, readings=merge.readings)
     assessment = assess(case)
-    if arguments.save:
-        dump(case, arguments.case)
+    backup = dump(case, arguments.case) if arguments.save else None
     if arguments.json:
         _write_json(assessment, sys.stdout)
-    else:
-        _write_report(assessment, sys.stdout, no_color="no_color" in arguments)
+        return 0
+    page = _page()
+    _write_report(assessment, page, sys.stdout, no_color="no_color" in arguments)
+    notes = replaced_lines(merge, case.board, page, saved=arguments.save)
+    if arguments.save:
+        notes += saved_lines(merge, arguments.case, backup, page)
+    write_lines([Line(""), *notes] if notes else [], sys.stdout, styled=False)
     return 0
 
 
@@ -198,21 +203,24 @@ def _case(name: str) -> Case:
     return loads(decode(content, where), where)
 
 
-def _page() -> Page:
+def _columns() -> int:
     import shutil
 
+    return shutil.get_terminal_size((80, 24)).columns
+
+
+def _page() -> Page:
     from benchtool.report.layout import LEAST, MOST, Page
     from benchtool.report.terminal import needs_ascii
 
-    columns = shutil.get_terminal_size((80, 24)).columns
-    return Page(width=min(max(columns, LEAST), MOST), ascii=needs_ascii(sys.stdout))
+    return Page(width=min(max(_columns(), LEAST), MOST), ascii=needs_ascii(sys.stdout))
 
 
-def _write_report(assessment: Assessment, stream: TextIO, *, no_color: bool) -> None:
+def _write_report(assessment: Assessment, page: Page, stream: TextIO, *, no_color: bool) -> None:
     from benchtool.report.terminal import wants_style, write_lines
     from benchtool.report.text import report_lines
 
-    write_lines(report_lines(assessment, _page()), stream, styled=wants_style(stream, no_color))
+    write_lines(report_lines(assessment, page), stream, styled=wants_style(stream, no_color))
 
 
 def _write_json(assessment: Assessment, stream: TextIO) -> None:
@@ -250,10 +258,28 @@ def _new(arguments: argparse.Namespace) -> int:
     return 0
 
 
-def _complain(sentence: str) -> None:
-    """One plain message on standard error, without signs that a terminal would obey."""
-    shown = "".join(sign if sign.isprintable() or sign == "\n" else "?" for sign in sentence)
-    print(f"{PROGRAM}: {shown}", file=sys.stderr)
+def _complain(message: str) -> None:
+    """One plain message on standard error, folded, without signs that a terminal would obey.
+
+    Every line of it is a problem: all but the first are set in, and what is folded further still.
+    """
+    for number, line in enumerate(message.split("\n")):
+        shown = "".join(sign if sign.isprintable() else "?" for sign in line)
+        print(_folded(shown, "  " if number else f"{PROGRAM}: "), file=sys.stderr)
+
+
+def _folded(text: str, first: str) -> str:
+    """The text in lines as wide as the terminal; no file name is cut and no command parted, for copying."""
+    import re
+    import textwrap
+
+    from benchtool.report.layout import LEAST, NO_BREAK, glued
+
+    command = re.compile(rf"(?<=\b{PROGRAM}) |(?<=\b{PROGRAM} assess) |(?<=\b{PROGRAM} new) ")
+    fold = textwrap.TextWrapper(
+        max(_columns(), LEAST), initial_indent=first, subsequent_indent="    ", break_long_words=False, break_on_hyphens=False
+    )
+    return fold.fill(command.sub(NO_BREAK, glued(text))).replace(NO_BREAK, " ")
 
 
 def _forget_output() -> None:

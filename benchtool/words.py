@@ -5,17 +5,23 @@ Why apart: the report, the screens and the paper say the same thing in the same 
 
 from __future__ import annotations
 
+import shlex
 from collections.abc import Iterator
 from dataclasses import dataclass
 
 from benchtool.board import Board
-from benchtool.catalogue.readings import READING_KINDS
+from benchtool.catalogue.readings import READING_KINDS, ReadingKind
 from benchtool.diagnosis.disagreement import Disagreement
 from benchtool.diagnosis.evidence import Expected
 from benchtool.observed import Check, Reading
-from benchtool.quantities import show, show_range
+from benchtool.quantities import exact, show, show_range
 
 CANNOT_TELL = "cannot tell"
+BLANK = "…"
+"""Stands for the number that a meter will show."""
+READ_AS = {"F": "nF", "A": "mA"}
+RESERVOIR_READ_AS = "uF"
+"""The units that meters show where it is not the plain one."""
 LISTED_STATES = 2
 """Loads named in a state; more of them are counted."""
 
@@ -103,6 +109,40 @@ def value_of(reading: Reading) -> str:
     if isinstance(reading.value, float) and unit is not None:
         return show(reading.value, unit, digits=4)
     return ", ".join(reading.value) if isinstance(reading.value, tuple) else str(reading.value)
+
+
+def typed(check: Check) -> str:
+    """What to type once the check is made: "rail-voltage 'relay rail' on 'heater relay' … V", "rectifier-test good|open|…"."""
+    return " ".join([check.what, *_typed_qualifiers(check), typed_value(READING_KINDS[check.what])])
+
+
+def _typed_qualifiers(check: Check) -> Iterator[str]:
+    kind = READING_KINDS[check.what]
+    for key, name in (("rail", check.rail), ("load", check.load)):
+        if name is not None:
+            yield _in_quotes(name) if key in kind.needs else f"{key} {_in_quotes(name)}"
+    if check.on:
+        yield f"on {' '.join(_in_quotes(name) for name in check.on)}"
+    if check.lifted:
+        yield "lifted"
+    if check.when == "warm":
+        yield "warm"
+    if check.clamp is not None:
+        yield f"clamp {exact(check.clamp, 'A')}"
+    if check.limit is not None:
+        yield f"limit {exact(check.limit, 'V')}"
+
+
+def _in_quotes(name: str) -> str:
+    """A name as one word of a typed line; one word too where it could be typed without, so that all look alike."""
+    return shlex.quote(name) if "'" in name else f"'{name}'"
+
+
+def typed_value(kind: ReadingKind) -> str:
+    """How a reading of this kind is typed: "… nF", or the words to choose from."""
+    if kind.unit is None:
+        return "|".join(kind.words)
+    return f"{BLANK} {RESERVOIR_READ_AS if kind.name == 'reservoir-capacitance' else READ_AS.get(kind.unit, kind.unit)}"
 
 
 def read_text(reading: Reading) -> str:

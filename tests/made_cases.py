@@ -44,11 +44,6 @@ def numbers(low: float, high: float) -> st.SearchStrategy[float]:
     return st.one_of(st.sampled_from((low, high)), st.floats(low, high, allow_subnormal=False))
 
 
-def figures(low: float, high: float) -> st.SearchStrategy[float]:
-    """Numbers as a meter's manual states them: an accuracy has two in one short text."""
-    return numbers(low, high).map(lambda number: float(f"{number:.6g}"))
-
-
 def value_of(rule: Any) -> st.SearchStrategy[Any]:
     """Any value that the rule of a key allows."""
     match rule:
@@ -68,7 +63,7 @@ def value_of(rule: Any) -> st.SearchStrategy[Any]:
         case Names():
             return st.lists(WORDS, max_size=3).map(tuple)
         case AccuracyOf():
-            return st.builds(Accuracy, figures(0.0, 1.0), figures(1e-12, 1.0))
+            return st.builds(Accuracy, numbers(0.0, 1.0), numbers(1e-12, 1.0))
     raise TypeError(rule)
 
 

@@ -199,12 +199,16 @@ def test_one_thing_wrong_is_one_problem_that_says_where(old: str, new: str, tabl
     [
         ("format = 1", "format = 2", ["1", "newer"]),
         ("variation =", "variatoin =", ["variation (probably meant)"]),
-        ('"680 nF"  ', "680  ", ['"680 F"']),
+        ('"680 nF"  ', "680  ", ['"680 nF"', "1 pF to 100 uF"]),
+        ('tolerance = "10 %"\nfitted', "tolerance = -3\nfitted", ['"10 %"', "0 % to 95 %"]),
+        ('tolerance = "10 %"\nfitted', "tolerance = 12\nfitted", ['"12 %"']),
+        ('value = "24.3 V"', "value = -7", ['"12 V"']),
+        ('value = "24.3 V"', 'value = "-7 V"', ["leads swapped?"]),
         ('value = "24.3 V"', "value = 13.1", ['"13.1 V"']),
         ('rectifier = "bridge"', 'rectifier = "delta"', ['"bridge"', '"half-wave"', '"half-wave-zener"']),
         ('value = "182 nF"', 'value = "shrunk"', ['"open" or "short"']),
         ("on = []   ", 'on = ["fan"]   ', ['"heater relay"']),
-        ('value = "24.3 V"', 'value = "900 V"', ["-5 V to 787.1"]),
+        ('value = "24.3 V"', 'value = "900 V"', ["-5 V to 787 V"]),
     ],
 )
 def test_a_problem_says_what_is_allowed(old: str, new: str, words: list[str]) -> None:

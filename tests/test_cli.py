@@ -51,6 +51,11 @@ def complaint(capsys: Captured, *words: str) -> tuple[int, str]:
     return status, err
 
 
+def unfolded(message: str) -> list[str]:
+    """The problems of a message, each on one line again."""
+    return message.replace("\n    ", " ").splitlines()
+
+
 def test_assess_ends_with_0_whatever_it_finds(capsys: Captured) -> None:
     assert cli.main(["assess", str(SAMPLE)]) == 0
     out, err = capsys.readouterr()
@@ -100,6 +105,49 @@ def test_save_keeps_the_readings_and_every_comment(capsys: Captured, case_file: 
     comments = [line for line in TEMPLATE.splitlines() if "#" in line]
     assert set(comments) <= set(saved.splitlines())
     assert case_file.with_name("opener.toml.bak").read_text(encoding="utf-8") == TEMPLATE
+
+
+def saved_reading(capsys: Captured, case_file: Path, reading: str, *options: str) -> str:
+    """What a save of one reading prints behind the report."""
+    assert cli.main(["assess", str(case_file), "--save", "--reading", reading, *options]) == 0
+    out, err = capsys.readouterr()
+    assert err == ""
+    return out
+
+
+def test_save_says_what_it_did(capsys: Captured, case_file: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.chdir(case_file.parent)
+    name = Path(case_file.name)
+    kept = "Kept 1 reading in opener.toml; the file before is opener.toml.bak.\n"
+    assert saved_reading(capsys, name, "rail-voltage '12 V rail' 7.4 V").endswith(f"\n\n{kept}")
+    replaced = "Replaced 7.4 V by 7.2 V: 12 V rail, all off.\n"
+    assert saved_reading(capsys, name, "rail-voltage '12 V rail' 7.2 V").endswith(f"\n\n{replaced}{kept}")
+    again = saved_reading(capsys, name, "rail-voltage '12 V rail' 7.2 V")
+    assert again.endswith("\n\nNothing to keep: opener.toml says so already.\n")
+    assert [reading.value for reading in benchtool.load(name).readings] == [7.2]
+    assert "7.4 V" in Path("opener.toml.bak").read_text(encoding="utf-8")
+
+
+def test_a_save_says_nothing_in_json(capsys: Captured, case_file: Path) -> None:
+    assert json.loads(saved_reading(capsys, case_file, RAIL_READING, "--json"))["format"] == 1
+
+
+def test_a_point_read_again_counts_once_also_without_a_save(capsys: Captured, case_file: Path) -> None:
+    saved_reading(capsys, case_file, "rail-voltage '12 V rail' 7.4 V")
+    before = case_file.read_text(encoding="utf-8")
+    assert cli.main(["assess", str(case_file), "--reading", "rail-voltage 7.2 V"]) == 0
+    out = capsys.readouterr().out
+    assert out.endswith("\n\n7.2 V counts in place of 7.4 V: 12 V rail, all off.\n")
+    assert out.count("7.4 V") == 1
+    assert case_file.read_text(encoding="utf-8") == before
+
+
+def test_other_points_and_further_looks_are_added(capsys: Captured, case_file: Path) -> None:
+    for line in (
+        "rail-voltage 7.4 V", "rail-voltage on 'motor relay' 7.1 V", "rail-voltage warm 7.0 V", "look residue", "look dry joint",
+    ):
+        assert "Replaced" not in saved_reading(capsys, case_file, line)
+    assert len(benchtool.load(case_file).readings) == 5
 
 
 def test_new_writes_a_case_that_can_be_judged_and_says_what_next(capsys: Captured, tmp_path: Path) -> None:
@@ -170,8 +218,9 @@ def test_version(capsys: Captured) -> None:
 def test_usage_is_2_and_one_line(capsys: Captured, words: list[str], told: str) -> None:
     status, message = complaint(capsys, *words)
     assert status == 2
-    assert told in message
-    assert message.count("\n") == 1
+    (line,) = unfolded(message)
+    assert told in line
+    assert max(map(len, message.splitlines())) <= 80
 
 
 def test_files_that_are_no_case_are_4(capsys: Captured, tmp_path: Path) -> None:
@@ -181,7 +230,7 @@ def test_files_that_are_no_case_are_4(capsys: Captured, tmp_path: Path) -> None:
         status, message = complaint(capsys, "assess", str(name))
         assert status == 4
         assert str(name) in message
-        assert message.count("\n") == 1
+        assert len(unfolded(message)) == 1
     assert complaint(capsys, "new", str(tmp_path / "no folder" / "a.toml"))[0] == 4
 
 
@@ -192,6 +241,30 @@ def test_a_case_with_problems_is_3_and_tells_all_of_them(capsys: Captured, case_
     assert status == 3
     assert "rated_volts" in message
     assert "4 m/s" in message
+
+
+def test_problems_after_the_first_are_set_in_and_all_are_folded(
+    capsys: Captured, case_file: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setenv("COLUMNS", "50")
+    words = ["--reading", "fuse-resistance 0.2", "--reading", "rail-voltage 900 V"]
+    _, message = complaint(capsys, "assess", str(case_file), *words)
+    first, second = unfolded(message)
+    assert "this board has no fuse; [board.fuse] would add one" in first
+    assert second.startswith("  --reading: ")
+    assert message.count("benchtool: ") == 1
+    assert max(map(len, message.splitlines())) <= 50
+
+
+@pytest.mark.parametrize("columns", ["32", "46", "80"])
+def test_folding_parts_neither_a_command_nor_a_value_from_its_unit(
+    capsys: Captured, case_file: Path, monkeypatch: pytest.MonkeyPatch, columns: str
+) -> None:
+    monkeypatch.setenv("COLUMNS", columns)
+    assert "benchtool assess board.toml." in complaint(capsys, "board.toml")[1]
+    message = complaint(capsys, "assess", str(case_file), "--reading", "rail-voltage 900 V")[1]
+    assert "-5 V" in message
+    assert "787 V" in message
 
 
 def test_bad_readings_are_3_told_together_and_nothing_is_saved(capsys: Captured, case_file: Path) -> None:

@@ -60,6 +60,14 @@ def test_every_prefix_stands_on_every_unit(prefix: str, unit: str, spelled: str,
         ("4V7", "V", 4.7),
         ("2.2 kV", "V", 2200.0),
         ("-23.1 V", "V", -23.1),
+        ("7.4VDC", "V", 7.4),
+        ("7.4 V DC", "V", 7.4),
+        ("225 VAC", "V", 225.0),
+        ("225 v ac", "V", 225.0),
+        ("~7.4 V", "V", 7.4),
+        ("850 mVdc", "V", 0.85),
+        ("48.2 mA AC", "A", 0.0482),
+        ("~ 3m5", "A", 0.0035),
         ("+5v", "V", 5.0),
         ("3m5", "A", 0.0035),
         ("250 us", "s", 250e-6),
@@ -192,6 +200,14 @@ def test_what_is_no_tolerance(text: str) -> None:
 )
 def test_accuracy_of_an_instrument(text: str, unit: str, value: tuple[float, float]) -> None:
     assert parse_accuracy(text, unit) == pytest.approx(value, rel=1e-15)
+
+
+def test_an_accuracy_with_all_the_figures_of_a_float_is_read() -> None:
+    text = "12.345678901234568 % + 0.00012345678901234567 ohm"
+    assert len(text) > 40
+    assert parse_accuracy(text, "ohm") == (0.12345678901234568, 0.00012345678901234567)
+    with pytest.raises(QuantityError, match="too long"):
+        parse_accuracy("1 % + " + "0" * 75, "ohm")
 
 
 @pytest.mark.parametrize(

@@ -63,14 +63,14 @@ def loads(text: str, name: str = "case") -> Case:
     return replace(case, text=text)
 
 
-def dump(case: Case, path: str | os.PathLike[str]) -> None:
-    """Save a case in one step, the previous content kept as `.bak`.
+def dump(case: Case, path: str | os.PathLike[str]) -> str | None:
+    """Save a case in one step; gives the name of the `.bak` that keeps the previous content, as `save_text` does.
 
     CaseError where it would not read back, FileError where it cannot be written; the file is unchanged then.
     """
     text = dumps(case)
     loads(text, file_name(path))
-    save_text(path, text)
+    return save_text(path, text)
 
 
 def dumps(case: Case) -> str:
@@ -123,6 +123,9 @@ def _refuse_unless_file(mode: int, name: str) -> None:
 
 
 TOO_DEEP = Problem("the file", "", "tables nested too deeply", "a table inside another, a few levels at most")
+LONGEST_LOOKED_AT = 200
+"""How much of a faulty line is searched for a value without quotes [characters]."""
+BARE_VALUE = re.compile(r"""=\s*((?:[^\s"'\[\]{},#=]|,(?=[0-9]))(?:[^"'\[\]{},#=]|,(?=[0-9]))*)(?=[,}]|$)""")
 TOMLLIB_PLACE = re.compile(r" \(at (?:line (\d+), column \d+|end of document)\)$")
 
 
@@ -144,8 +147,24 @@ def _syntax_problem(text: str, message: str) -> Problem:
     lines = text.splitlines() or [""]
     number = int(place[1]) if place and place[1] else len(lines)
     line = lines[min(number, len(lines)) - 1].strip()
-    reason = printable(TOMLLIB_PLACE.sub("", message), 100)
-    return Problem("", f"line {number}", quoted(line), f"TOML ({reason})")
+    bare = _value_without_quotes(line[:LONGEST_LOOKED_AT].split("#")[0])
+    reason = f"TOML ({printable(TOMLLIB_PLACE.sub('', message), 100)})"
+    allowed = reason if bare is None else f"put the value in quotes: {quoted(bare)}"
+    return Problem("", f"line {number}", quoted(line), allowed)
+
+
+def _value_without_quotes(line: str) -> str | None:
+    """The first value of a line that stands bare and is none in TOML: `470 nF`, `coil`; None where there is none."""
+    values = (match[1].strip() for match in BARE_VALUE.finditer(line))
+    return next((value for value in values if not _is_toml(f"x = {value}")), None)
+
+
+def _is_toml(line: str) -> bool:
+    try:
+        tomllib.loads(line)
+    except ValueError:
+        return False
+    return True
 
 
 def _refuse_other_formats(data: Toml, name: str) -> None:

@@ -8,13 +8,14 @@ from __future__ import annotations
 
 import difflib
 import math
+from collections.abc import Sequence
 from dataclasses import replace
 
 from benchtool.board import Board
 from benchtool.case import Reading, ReadingValue
 from benchtool.casefile.check import exists
 from benchtool.casefile.schema import Findings, Place, Toml, entries_of, read_record, to_toml
-from benchtool.casefile.values import bounds_text, in_quotes, quantity_text
+from benchtool.casefile.values import bounds_text, in_quotes, quantity_text, spelled
 from benchtool.catalogue.accepted import accepted, lacking
 from benchtool.catalogue.readings import READING_KINDS, ReadingKind
 from benchtool.errors import QuantityError
@@ -24,6 +25,10 @@ from benchtool.quantities import parse
 MOST_READINGS = 500
 QUALIFIERS = ("rail", "load", "on", "lifted", "clamp", "limit")
 """Keys of a reading that only some kinds know; `when` belongs to all."""
+OVERLOAD = ("ol", "0l")
+"""What ohmmeters show of an open circuit, dots aside. On other ranges the same letters say something else."""
+LEAST_LIKE = 0.5
+"""How like a known name a wrong one must be for a hint: `12V` is half like `12 V rail`."""
 
 
 def read_readings(value: object, place: Place, board: Board, findings: Findings) -> tuple[Reading, ...]:
@@ -68,15 +73,31 @@ def names_of(key: str, board: Board) -> tuple[str, ...]:
 def _check_names(reading: Reading, place: Place, board: Board, findings: Findings) -> None:
     for key, name in (("rail", reading.rail), ("load", reading.load)):
         if name is not None and not exists(name, names_of(key, board)):
-            findings.add(place, key, quoted(name), names_listed(names_of(key, board)))
+            findings.add(place, key, quoted(name), _names_like(name, names_of(key, board)))
     on = reading.on or ()
     strange = [name for name in on if not exists(name, board.switched_loads())]
     if strange:
-        findings.add(
-            place, "on", quoted(strange[0]), f"switched loads: {names_listed(board.switched_loads())}"
-        )
+        findings.add(place, "on", quoted(strange[0]), f"switched loads: {_names_like(strange[0], board.switched_loads())}")
     if len(set(on)) < len(on):
         findings.add(place, "on", "a name twice", "each name once")
+
+
+def _names_like(name: str, names: Sequence[str]) -> str:
+    """All names that may stand there, first the one that was probably meant."""
+    folded = {known.casefold(): known for known in names}
+    meant = difflib.get_close_matches(name.casefold(), folded, n=1, cutoff=LEAST_LIKE)
+    if not meant:
+        return names_listed(names)
+    likely = folded[meant[0]]
+    others = [known for known in names if known != likely]
+    return listed([f"{quoted(likely, 60)} (probably meant)", *(quoted(other, 60) for other in others)])
+
+
+def suiting(kind: ReadingKind, key: str, board: Board) -> tuple[str, ...]:
+    """Names of the rails or loads, whichever `key` says, where this reading can be taken."""
+    if key == "rail":
+        return tuple(rail.name for rail in board.rails if lacking(kind, board, rail=rail) is None)
+    return tuple(load.name for load in board.loads if lacking(kind, board, load=load) is None)
 
 
 def _check_board_has_it(
@@ -87,7 +108,8 @@ def _check_board_has_it(
     need = lacking(kind, board, rail, load)
     if need is not None:
         key = next(iter(kind.needs), "what")
-        findings.add(place, key, quoted(getattr(reading, key)), f"for {kind.name}: {need}")
+        others = names_listed(suiting(kind, key, board)) if key != "what" and suiting(kind, key, board) else "other readings"
+        findings.add(place, key, quoted(getattr(reading, key)), f"{others}: {need}")
 
 
 def _read_value(
@@ -111,13 +133,22 @@ def read_value(kind: ReadingKind, value: object, board: Board) -> ReadingValue:
     if kind.several:
         return _several_words(kind, value)
     if not isinstance(value, str):
-        raise QuantityError(shown(value), _allowed(kind, value))
-    word = _plain(value)
-    if word in kind.words:
+        example = None if kind.unit is None else spelled(value, kind.unit, lambda text: read_value(kind, text, board))
+        raise QuantityError(shown(value), _allowed(kind, example))
+    word = word_of(kind, value)
+    if word is not None:
         return word
     if kind.unit is None:
         raise QuantityError(shown(value), _allowed(kind))
     return _number(kind, kind.unit, value, board)
+
+
+def word_of(kind: ReadingKind, text: str) -> str | None:
+    """The word of this kind that the text is, an ohmmeter's overload sign taken as `open`; None where it is none."""
+    plain = _plain(text)
+    if kind.unit == "ohm" and "open" in kind.words and plain.replace(".", "") in OVERLOAD:
+        return "open"
+    return plain if plain in kind.words else None
 
 
 def _plain(word: str) -> str:
@@ -131,8 +162,13 @@ def _number(kind: ReadingKind, unit: str, value: str, board: Board) -> float:
         raise QuantityError(refusal.found, refusal.allowed.rstrip(".") + _or_words(kind)) from None
     low, high = accepted(kind, board)
     if number < low or number > high:
-        raise QuantityError(shown(value), bounds_text(low, high, unit) + _or_words(kind))
+        raise QuantityError(shown(value), bounds_text(low, high, unit) + _or_words(kind) + _if_swapped(kind, number))
     return number
+
+
+def _if_swapped(kind: ReadingKind, number: float) -> str:
+    """A hint where a DC meter shows less than nothing."""
+    return "; leads swapped?" if number < 0.0 and (kind.meter or "").startswith("dc_") else ""
 
 
 def _several_words(kind: ReadingKind, value: object) -> tuple[str, ...]:
@@ -156,8 +192,8 @@ def _or_words(kind: ReadingKind) -> str:
     return f"; or {names_listed(kind.words)}" if kind.words else ""
 
 
-def _allowed(kind: ReadingKind, value: object = None) -> str:
-    return _allowed_words(kind) if kind.unit is None else in_quotes(value, kind.unit) + _or_words(kind)
+def _allowed(kind: ReadingKind, example: str | None = None) -> str:
+    return _allowed_words(kind) if kind.unit is None else in_quotes(kind.unit, example) + _or_words(kind)
 
 
 def reading_to_toml(reading: Reading) -> dict[str, object]:

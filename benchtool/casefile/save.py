@@ -28,26 +28,30 @@ def reason_of(failure: OSError | ValueError) -> str:
     return str(getattr(failure, "strerror", None) or failure)
 
 
-def save_text(path: str | os.PathLike[str], text: str) -> None:
+def save_text(path: str | os.PathLike[str], text: str) -> str | None:
     """Write `text` as UTF-8 in place of the file's content and keep the previous content as `.bak`.
 
+    Gives the name of that file, which stands beside the saved one; None where nothing was written over.
     A link is followed, permissions are kept, and a file that holds the text already is left alone.
     FileError with the reason, the file unchanged, where that cannot be done.
     """
     try:
-        _save(Path(os.path.realpath(path)), text.encode("utf-8"), file_name(path))
+        return _save(Path(os.path.realpath(path)), text.encode("utf-8"), file_name(path))
     except (OSError, ValueError) as failure:
         raise FileError(file_name(path), f"cannot be saved: {reason_of(failure)}") from failure
 
 
-def _save(target: Path, content: bytes, name: str) -> None:
+def _save(target: Path, content: bytes, name: str) -> str | None:
     previous = _previous(target, name)
-    if previous == content:
-        return
-    mode = None if previous is None else stat.S_IMODE(target.stat().st_mode)
-    if previous is not None:
-        _replace(target.with_name(target.name + ".bak"), previous, mode)
+    if previous is None:
+        _replace(target, content, None)
+    if previous is None or previous == content:
+        return None
+    mode = stat.S_IMODE(target.stat().st_mode)
+    backup = target.with_name(f"{target.name}.bak")
+    _replace(backup, previous, mode)
     _replace(target, content, mode)
+    return backup.name
 
 
 def _previous(target: Path, name: str) -> bytes | None:

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import datetime
 import math
+from collections.abc import Callable
 from functools import singledispatch
 
 from benchtool.board import (
@@ -26,15 +27,16 @@ from benchtool.board import (
 from benchtool.errors import QuantityError
 from benchtool.observed import Accuracy, AccuracyOf
 from benchtool.printable import is_printable, listed, names_listed, shown
-from benchtool.quantities import exact, parse, parse_accuracy
+from benchtool.quantities import exact, parse, parse_accuracy, round_up
 
 Rule = Quantity | Choice | Text | Whole | Flag | Moment | Names | Table | Tables | AccuracyOf
 
 EXAMPLES = {
-    "V": "24 V", "A": "3.5 mA", "F": "680 nF", "ohm": "2k2", "W": "1.3 W",
+    "V": "12 V", "A": "3.5 mA", "F": "680 nF", "ohm": "2k2", "W": "1.3 W",
     "Hz": "50 Hz", "s": "250 us", "%": "10 %", "degC": "40 degC",
 }  # fmt: skip
 UNKNOWN_WORD = UNKNOWN.value
+BOUND_FIGURES = 3
 MOST_NAMES = 100
 """Longest list of names or words that a file may hold."""
 
@@ -88,18 +90,25 @@ def quantity_text(value: float, unit: str) -> str:
 
 
 def bounds_text(low: float, high: float, unit: str) -> str:
-    """`1 pF to 100 uF`: both ends [unit]; ends that were computed are shown to the figures that count."""
-    return f"{exact(_short(low), unit)} to {exact(_short(high), unit)}"
+    """`1 pF to 100 uF`: both ends [unit]; computed ends in three figures, rounded so that what is said is taken."""
+    return f"{exact(round_up(low, BOUND_FIGURES), unit)} to {exact(-round_up(-high, BOUND_FIGURES), unit)}"
 
 
-def _short(value: float) -> float:
-    return float(f"{value:.6g}")
+def in_quotes(unit: str, example: str | None = None) -> str:
+    """How a quantity [unit] is written in a file."""
+    return f'text in quotes with the unit, as "{example or EXAMPLES[unit]}"'
 
 
-def in_quotes(value: object, unit: str) -> str:
-    """How a quantity is written in a file; a bare number is shown as it should stand there."""
-    bare = isinstance(value, (int, float)) and not isinstance(value, bool)
-    return f'text in quotes with the unit, as "{f"{shown(value)} {unit}" if bare else EXAMPLES[unit]}"'
+def spelled(value: object, unit: str, takes: Callable[[str], object]) -> str | None:
+    """A bare number with the unit it lacks; None for what is no number, or would be refused by `takes` in that form too."""
+    if isinstance(value, bool) or not isinstance(value, (int, float)):
+        return None
+    text = f"{shown(value)} {unit}"
+    try:
+        takes(text)
+    except QuantityError:
+        return None
+    return text
 
 
 def _bounds(rule: Quantity) -> str:
@@ -109,7 +118,7 @@ def _bounds(rule: Quantity) -> str:
 
 @describe.register
 def _(rule: Quantity) -> str:
-    return f"{in_quotes(None, rule.unit)}, {_bounds(rule)}"
+    return f"{in_quotes(rule.unit)}, {_bounds(rule)}"
 
 
 @read.register
@@ -117,7 +126,8 @@ def _(rule: Quantity, value: object) -> float | Unknown:
     if rule.unknown and value == UNKNOWN_WORD:
         return UNKNOWN
     if not isinstance(value, str):
-        raise QuantityError(shown(value), in_quotes(value, rule.unit))
+        example = spelled(value, rule.unit, lambda text: read(rule, text))
+        raise QuantityError(shown(value), in_quotes(rule.unit, example) if example else describe(rule))
     number = parse(value, rule.unit)
     if not rule.low <= number <= rule.high:
         raise QuantityError(shown(value), _bounds(rule))

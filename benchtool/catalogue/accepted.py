@@ -6,11 +6,11 @@ proposes only readings that the same rules admit. Wide on purpose: 600 V on a ra
 
 from __future__ import annotations
 
-import math
 from collections.abc import Callable
 
 from benchtool.board import Board, Load, Rail
 from benchtool.catalogue.readings import ReadingKind
+from benchtool.physics.stress import highest_crest
 
 RAIL_OVER_CREST = 2.2
 """A half-wave board with an open zener pumps its rail to twice the crest; the case format's section 4."""
@@ -31,11 +31,6 @@ BOUND_BY_NOMINAL = {
 }
 
 
-def highest_crest(board: Board) -> float:
-    """The crest of the highest mains voltage [V], for a sine wave."""
-    return math.sqrt(2.0) * board.mains.voltage * (1.0 + board.mains.variation)
-
-
 def accepted(kind: ReadingKind, board: Board) -> tuple[float, float]:
     """Lowest and highest number that a file may hold for this reading [kind.unit].
 
@@ -52,38 +47,53 @@ def accepted(kind: ReadingKind, board: Board) -> tuple[float, float]:
 UNREAD = ""
 """What stands in a record for a word of the file that was refused: nothing that hangs on it is judged."""
 
+
+def _without(part: str, table: str | None = None) -> str:
+    return f"this board has no {part}; [board.{table or part}] would add one"
+
+
+def _bare(part: str) -> str:
+    return f"this rail has no {part}; {part} = {{ ... }} in its table would add one"
+
+
 BOARD_HAS: dict[str, tuple[Callable[[Board], bool], str]] = {
-    "inrush-voltage": (lambda board: board.inrush is not None, "an inrush resistor, [board.inrush]"),
-    "inrush-resistance": (lambda board: board.inrush is not None, "an inrush resistor, [board.inrush]"),
-    "fuse-resistance": (lambda board: board.fuse is not None, "a fuse, [board.fuse]"),
-    "varistor-resistance": (lambda board: board.varistor is not None, "a varistor, [board.varistor]"),
-    "bleeder-resistance": (lambda board: board.bleeder is not None, "a bleeder, [board.bleeder]"),
+    "inrush-voltage": (lambda board: board.inrush is not None, _without("inrush resistor", "inrush")),
+    "inrush-resistance": (lambda board: board.inrush is not None, _without("inrush resistor", "inrush")),
+    "fuse-resistance": (lambda board: board.fuse is not None, _without("fuse")),
+    "varistor-resistance": (lambda board: board.varistor is not None, _without("varistor")),
+    "bleeder-resistance": (lambda board: board.bleeder is not None, _without("bleeder")),
     "shunt-capacitance": (
         lambda board: board.dropper.kind in ("divider", UNREAD),
-        'a dropper of kind "divider"',
+        'this board\'s dropper is no divider; kind = "divider" in [board.dropper] would say it is',
     ),
-    "dropper-capacitance": (lambda board: board.dropper.kind != "resistor", "a dropper that is a capacitor"),
+    "dropper-capacitance": (
+        lambda board: board.dropper.kind != "resistor",
+        "this board's dropper is a resistor, not a capacitor",
+    ),
 }
 RAIL_HAS: dict[str, tuple[Callable[[Rail], bool], str]] = {
     "feed-resistance": (
         lambda rail: rail.fed_through in ("resistor", "regulator", UNREAD),
-        "a rail fed through a resistor or regulator",
+        "this rail is not fed through a resistor or regulator",
     ),
-    "zener-test": (lambda rail: rail.zener is not None, "a rail with a zener"),
-    "reservoir-capacitance": (lambda rail: rail.reservoir is not None, "a rail with a reservoir"),
-    "reservoir-esr": (lambda rail: rail.reservoir is not None, "a rail with a reservoir"),
-    "reservoir-leakage": (lambda rail: rail.reservoir is not None, "a rail with a reservoir"),
+    "zener-test": (lambda rail: rail.zener is not None, _bare("zener")),
+    "reservoir-capacitance": (lambda rail: rail.reservoir is not None, _bare("reservoir")),
+    "reservoir-esr": (lambda rail: rail.reservoir is not None, _bare("reservoir")),
+    "reservoir-leakage": (lambda rail: rail.reservoir is not None, _bare("reservoir")),
 }
 LOAD_HAS: dict[str, tuple[Callable[[Load], bool], str]] = {
-    "coil-resistance": (lambda load: load.kind in ("coil", UNREAD), 'a load of kind "coil"'),
-    "switch-test": (lambda load: load.switched, "a switched load"),
+    "coil-resistance": (
+        lambda load: load.kind in ("coil", UNREAD),
+        'this load is no coil; kind = "coil" in its table would say it is',
+    ),
+    "switch-test": (lambda load: load.switched, "this load is not switched; switched = true in its table would say it is"),
 }
 
 
 def lacking(
     kind: ReadingKind, board: Board, rail: Rail | None = None, load: Load | None = None
 ) -> str | None:
-    """What the board, rail or load would need for this reading; None where the reading can be taken there."""
+    """Why this reading cannot be taken on the board, rail or load, and what would change it; None where it can be taken."""
     if kind.name in BOARD_HAS:
         holds, need = BOARD_HAS[kind.name]
         return None if holds(board) else need

@@ -15,6 +15,7 @@ from benchtool.quantities.text import show
 from benchtool.quantities.units import EXPONENTS, KINDS, to_si
 
 _LONGEST = 40
+_LONGEST_ACCURACY = 80  # two numbers with all the figures of a float
 _NUMBER = r"[+-]?(?:[0-9]+(?:\.[0-9]*|,[0-9]+)?|[.,][0-9]+)(?:[eE][+-]?[0-9]{1,3})?"
 _PREFIX = "[pPnNuUmMkKgG]"
 _OTHER_CASE = {"P": "p", "N": "n", "U": "u", "K": "k", "g": "G"}  # only m and M differ
@@ -87,7 +88,7 @@ def parse_tolerance(text: str) -> float:
 
 def parse_accuracy(text: str, unit: str) -> tuple[float, float]:
     """Accuracy as (fraction of the reading, floor [unit]) from "0.5 % + 20 mV"; either may stand alone."""
-    plain = _BOTH_WAYS.sub("", _plain(text, unit, bare=False))
+    plain = _BOTH_WAYS.sub("", _plain(text, unit, bare=False, longest=_LONGEST_ACCURACY))
     terms = re.split(r" ?(?<![eE])\+ ?", plain)
     percents = [term for term in terms if term.endswith("%")]
     floors = [term for term in terms if not term.endswith("%")]
@@ -108,9 +109,9 @@ class _Read(NamedTuple):
     alone: bool  # neither prefix nor unit stood beside the number
 
 
-def _plain(text: str, unit: str, bare: bool) -> str:
+def _plain(text: str, unit: str, bare: bool, longest: int = _LONGEST) -> str:
     """The text with one spelling for each sign; refuses what cannot be an entry at all."""
-    if len(text) > _LONGEST:
+    if len(text) > longest:
         raise QuantityError(f"{printable(text)} is too long", _allowed(unit, bare))
     plain = " ".join(part for part in text.translate(_SAME).split(" ") if part)
     if not plain.isprintable():
@@ -146,7 +147,7 @@ def _number_pattern(unit: str) -> re.Pattern[str]:
     spelled = f"(?P<unit>(?i:{kind.spelling}))"
     prefix = f"(?P<prefix>{_PREFIX})?"
     return re.compile(
-        f"(?P<number>{_NUMBER}) ?" + (f"{prefix} ?{spelled}?" if kind.alone else f"(?:{prefix} ?{spelled})?")
+        f"{kind.before}(?P<number>{_NUMBER}) ?" + (f"{prefix} ?{spelled}?" if kind.alone else f"(?:{prefix} ?{spelled})?")
     )
 
 
@@ -155,7 +156,7 @@ def _mark_pattern(unit: str) -> re.Pattern[str]:
     kind = KINDS[unit]
     inner = f"(?P<whole>[0-9]+)(?P<inner>{_one_of(kind.inner)})"
     leading = f"(?P<leading>{_one_of(kind.leading)})"
-    return re.compile(f"(?P<sign>[+-]?)(?:{inner}|{leading})(?P<part>[0-9]+) ?(?i:{kind.spelling})?")
+    return re.compile(f"{kind.before}(?P<sign>[+-]?)(?:{inner}|{leading})(?P<part>[0-9]+) ?(?i:{kind.spelling})?")
 
 
 def _one_of(letters: str) -> str:

@@ -23,14 +23,20 @@ class Kind(NamedTuple):
     spelling: str  # regular expression for what may stand for the unit, in either case
     inner: str = ""  # letters that may stand in place of the decimal point, as in 2k2
     leading: str = ""  # those that may also stand before all figures, as in n47
+    before: str = ""  # regular expression for what may stand before the number and says nothing
     alone: bool = True  # a prefix letter is enough; but "40 K" as a temperature is kelvin, not 40 000 degrees
 
+
+_VOLT = "v(?: ?(?:ac|dc))?"
+_AMPERE = "a(?: ?(?:ac|dc))?"
+_WAVE = "(?:~ ?)?"
+# Meters and plates say AC or DC beside volts and amperes; which of the two is meant follows from what is asked.
 
 # A k or M between figures is a resistor's marking and p or n a capacitor's (IEC 60062). "2k2" where volts are
 # asked for is a slip of the row and is refused, while "2.2 kV" says what it means.
 KINDS = {
-    "V": Kind("voltage", "volts", "23.1", "850m", "20 mV", "volt", "V", "v", "VvmuU"),
-    "A": Kind("current", "amperes", "0.0035", "3m5", "50 uA", "ampere", "A", "a", "AamuUnNpP"),
+    "V": Kind("voltage", "volts", "23.1", "850m", "20 mV", "volt", "V", _VOLT, "VvmuU", before=_WAVE),
+    "A": Kind("current", "amperes", "0.0035", "3m5", "50 uA", "ampere", "A", _AMPERE, "AamuUnNpP", before=_WAVE),
     "F": Kind("capacitance", "farads", "680 nF", "0u68", "0.2 nF", "farad", "F", "f", "FfmuUnNpP", "muUnNpP"),
     "ohm": Kind("resistance", "ohms", "470", "2k2", "0.2 ohm", "ohm", "Ω", "ohms?|Ω|r", "RrΩωmkKMG", "RrkKM"),
     "W": Kind("power", "watts", "1.3", "400m", "10 mW", "watt", "W", "w", "WwmuU"),
