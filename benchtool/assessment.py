@@ -18,7 +18,7 @@ from benchtool.diagnosis.disagreement import disagreements
 from benchtool.diagnosis.effective import effective_of
 from benchtool.diagnosis.evidence import Because, because, fails_to_run
 from benchtool.diagnosis.posterior import Posterior, posterior_of
-from benchtool.diagnosis.safety import safety_findings
+from benchtool.diagnosis.safety import bleeder_read, power_allowed, safety_findings, zener_open_of
 from benchtool.observed import Reading
 from benchtool.physics.bench import Bench
 from benchtool.physics.budget import agreed, budget_of, regulating
@@ -40,12 +40,13 @@ RMS_OF_TRIANGLE = float(np.sqrt(12.0))
 def assess(case: Case) -> Assessment:
     """The verdict on `case`. A valid case always gets one, whatever was read on it."""
     board, readings = case.board, case.readings
-    standing, safety = cautions(board), safety_findings(board, readings)
+    standing, safety = cautions(board, bleeder_read=bleeder_read(readings)), safety_findings(board, readings)
     missing = not_computed(shape_of(board))
     if missing:
         cannot = f"This board has {' and '.join(missing)}: benchtool cannot compute that yet."
         return Assessment(case=case, cautions=standing, safety=safety, cannot=cannot)
     posterior = posterior_of(board, case.meter, readings)
+    safety = safety_findings(board, readings, zener_open_of(posterior))
     return Assessment(
         case=case,
         cautions=standing,
@@ -55,7 +56,7 @@ def assess(case: Case) -> Assessment:
         effective=effective_of(board, case.meter, readings),
         suspects=_suspects(posterior, case),
         disagreements=disagreements(posterior),
-        next_checks=next_checks(posterior, [reading.check for reading in readings]),
+        next_checks=next_checks(posterior, [reading.check for reading in readings], power_allowed=power_allowed(safety)),
         unused=tuple(reading for reading in readings if reading.what not in SHOWS and reading.what != "look"),
     )
 

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import pytest
 
 from benchtool.casefile import loads
@@ -115,6 +117,7 @@ def test_the_case_formats_own_example_is_drawn_cell_by_cell() -> None:
         " SHORT BY          11.0              ×××××××××××",
         " as marked         40.9   █████████████████████████████████▒▒▒▒▒▒▒▒▒▒▒▒▒▒▒▒▒",
         "                          c controller, h heater relay",
+        "                          ▒ over mains and tolerance",
     ]
 
 
@@ -132,6 +135,22 @@ def test_a_mere_bound_ends_in_an_arrow_and_the_difference_is_drawn_from_the_mark
     assert not any("SHORT" in line for line in lines)
 
 
+def test_every_figure_stands_apart_from_its_label() -> None:
+    # 22.2 - 4.2 mA: the longest label with a figure of four signs; 22.2 mA are 44 cells of 0.5 mA from column 27 on.
+    short = replace(BUDGET, available=0.0042, available_low=0.0032, available_high=0.0052)
+    row = next(line for line in drawn(BOUND, Page(80), short) if "SHORT" in line)
+    assert row.startswith(" SHORT BY as marked 18.0  ")
+    assert cells(row) == 26 + 44
+
+
+@pytest.mark.parametrize("width", [80, 40])
+def test_a_board_short_by_its_marks_says_so(width: int) -> None:
+    short = replace(BUDGET, available=0.0042, available_low=0.0032, available_high=0.0052)
+    told = "By its marks this board cannot hold relay rail with heater relay on: check the values typed, or it was built so."
+    assert " ".join(" ".join(drawn(BOUND, Page(width), short)).split()).endswith(told)
+    assert "By its marks" not in " ".join(drawn(BOUND, Page(width)))
+
+
 def test_a_current_read_on_the_mains_side_is_not_called_the_rails() -> None:
     by_line = Reading(what="inrush-voltage", on=ON, value=1.2)
     lines = drawn(Effective(current=0.0112, current_low=0.0102, current_high=0.0125, readings=(by_line,)), Page(80))
@@ -140,7 +159,7 @@ def test_a_current_read_on_the_mains_side_is_not_called_the_rails() -> None:
 
 def test_one_row_on_a_narrow_page_at_two_milliamperes_a_cell() -> None:
     # 10.2 mA is 5 cells of 2 mA and 12.5 mA is 6.
-    assert drawn(READ, Page(40)) == ["BUDGET, heater relay on, 2 mA a cell", "gets 11.2 █████▒ needs 22.2 SHORT 11.0"]
+    assert drawn(READ, Page(40)) == ["BUDGET, heater relay on, 2 mA a cell", "gets 11.2 █████▒ need 22.2 mA SHORT 11.0"]
 
 
 def test_without_room_for_a_bar_the_figures_stay() -> None:

@@ -209,6 +209,29 @@ def test_a_dead_check_comes_before_a_live_one_of_like_use(monkeypatch: pytest.Mo
     assert order == [("dead", False), ("live", False), ("live", False), ("dead", True)]
 
 
+@pytest.mark.parametrize(("live_minutes", "first"), [(1.1, "dead"), (0.9, "live")])
+def test_a_live_check_comes_first_only_if_it_tells_twice_as_much_a_minute(
+    live_minutes: float, first: str, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """One bit each; the dead check takes two minutes, the live one a little over and a little under half of that."""
+    found = known_posterior((0.5, 0.5))
+    monkeypatch.setattr(checks, "minutes_of", lambda check, last: live_minutes if check.what == "inrush-voltage" else 2.0)
+    monkeypatch.setattr(checks, "SHOWS", {
+        "inrush-voltage": showing(found, numbers(1.0, 60.0)),
+        "dropper-capacitance": showing(found, numbers(1e-9, 1e-6)),
+    })
+    assert next_checks(found, ())[0].condition == first
+
+
+def test_where_the_board_must_not_be_powered_no_live_check_is_proposed(monkeypatch: pytest.MonkeyPatch) -> None:
+    found = known_posterior((0.5, 0.5))
+    monkeypatch.setattr(checks, "SHOWS", {
+        "inrush-voltage": showing(found, numbers(1.0, 60.0)),
+        "dropper-capacitance": showing(found, numbers(1e-9, 1e-6)),
+    })
+    assert {item.condition for item in next_checks(found, (), power_allowed=False)} == {"dead"}
+
+
 def test_of_two_checks_that_cost_the_same_the_one_that_tells_more_comes_first(monkeypatch: pytest.MonkeyPatch) -> None:
     found = known_posterior((0.4, 0.3, 0.3))
     monkeypatch.setattr(checks, "SHOWS", {

@@ -40,6 +40,15 @@ def test_a_table_gives_its_first_column_the_room_that_is_left() -> None:
     assert lines == [" reading          read", " a very long      14.1 V", "   name indeed"]
 
 
+def test_the_first_heading_of_a_table_is_never_broken() -> None:
+    wide = "x" * 18
+    rows = [("reading", *("y" * 18,) * 3, "says"), ("relay rail, all off", *(wide,) * 3, "against")]
+    lines = [line.text for line in table(Page(76), rows)]
+    assert lines[0].startswith(" reading  y")
+    assert max(map(cells, lines)) <= 76
+    assert table(Page(80), [("reading", "read"), ("fuse", "0.4 Ω")])[0].text == " reading  read"
+
+
 def test_a_heading_as_wide_as_the_page_stands_alone() -> None:
     lines = paragraph(Page(32), "97 %", first="THIS SUPPLY DOES WHAT IT SHOULD  ", rest="  ", role="headline")
     assert [line.text for line in lines] == ["THIS SUPPLY DOES WHAT IT SHOULD", "  97 %"]

@@ -12,10 +12,13 @@ from typing import Any
 
 import pytest
 
-from benchtool.board import UNKNOWN, Bleeder, Board
-from benchtool.diagnosis.safety import Finding, safety_findings
-from benchtool.observed import Reading
-from tests.some_boards import CONTRACT, read
+from benchtool import assess
+from benchtool.board import UNKNOWN, Bleeder, Board, Reservoir
+from benchtool.catalogue.cautions import cautions
+from benchtool.diagnosis.posterior import posterior_of
+from benchtool.diagnosis.safety import Finding, bleeder_read, power_allowed, safety_findings, zener_open_of
+from benchtool.observed import Meter, Reading
+from tests.some_boards import CONTRACT, FULL, draw_few, read
 
 BOARD = CONTRACT.board
 BLEEDER = 940e3
@@ -135,9 +138,124 @@ def test_an_open_bleeder_is_certain_and_said_first() -> None:
     assert "measure" in first.sentence()
 
 
-def test_a_bleeder_that_cannot_be_read_off_and_was_measured_is_judged_by_nothing() -> None:
-    assert faults(with_bleeder(resistance=UNKNOWN), read("bleeder-resistance", 1e6)) == []
+def test_a_bleeder_that_cannot_be_read_off_and_was_measured_is_judged_by_its_number_alone() -> None:
+    """By hand: 748 nF through 1 Mohm takes 1.76 s from 357.8 V to 34 V, through 400 kohm 0.70 s."""
+    assert faults(with_bleeder(resistance=UNKNOWN), read("bleeder-resistance", 1e6)) == ["slow-discharge"]
+    assert faults(with_bleeder(resistance=UNKNOWN), read("bleeder-resistance", 400e3)) == []
     assert "bleeder-open" in faults(with_bleeder(resistance=UNKNOWN), read("bleeder-resistance", "open"))
+
+
+def test_the_number_that_was_read_sets_the_time() -> None:
+    """748 nF · 1.2 Mohm · ln(357.8 V / 34 V), the slowest dropper with the bleeder as it is."""
+    figures = finding(BOARD, "slow-discharge", read("bleeder-resistance", 1.2e6)).figures
+    assert figures["seconds"] == pytest.approx(748e-9 * 1.2e6 * math.log(253.0 * 2.0**0.5 / 34.0), rel=1e-9)
+
+
+@pytest.mark.parametrize("value", ["open", 1.6 * BLEEDER])
+def test_no_time_stands_beside_an_open_bleeder(value: float | str) -> None:
+    assert faults(BOARD, read("bleeder-resistance", value)) == ["bleeder-open"]
+
+
+def test_the_cautions_know_the_bleeder_that_was_read() -> None:
+    """748 nF · 987 kohm as marked: 1.74 s, told as 1.8 s; through 1.2 Mohm as read 2.12 s, told as 2.2 s."""
+    assert "falls to 34 V in up to 1.8 s if its bleeder is whole." in cautions(BOARD)[1]
+    read_as = cautions(BOARD, bleeder_read=1.2e6)[1]
+    assert "falls to 34 V in up to 2.2 s through its bleeder as read." in read_as
+    assert "whole" not in read_as
+    opened = cautions(BOARD, bleeder_read=math.inf)[1]
+    assert "358 V for hours; nothing known empties it." in opened
+    assert "wait" not in opened
+    assert bleeder_read((read("bleeder-resistance", 1e6), read("bleeder-resistance", "open"))) == math.inf
+    assert bleeder_read(()) is None
+
+
+@pytest.mark.parametrize("ascii", [False, True])
+def test_the_discharge_is_told_in_full(ascii: bool) -> None:
+    """Resistor, time, range and proving of the meter: the published values, cautions a bench needs (common practice)."""
+    told = cautions(BOARD, ascii=ascii)[1]
+    assert f"10 k{'ohm' if ascii else 'Ω'} 5 W, held on for 15 s" in told
+    for words in ("DC range", "AC range reads a charge as zero", "before and after"):
+        assert words in told
+
+
+# --- an open zener: the board is not powered
+
+RAIL = "relay rail"
+"""18 V on top of 5.1 V: 23.1 V to common."""
+
+
+def suspected(board: Board, chances: dict[str, float], *readings: Reading) -> list[Finding]:
+    return [each for each in safety_findings(board, readings, chances) if each.fault == "zener-open"]
+
+
+@pytest.mark.parametrize(("chance", "told"), [(0.049, False), (0.05, True), (0.4, True)])
+def test_an_open_zener_is_told_from_five_percent(chance: float, told: bool) -> None:
+    found = suspected(BOARD, {RAIL: chance})
+    assert [(each.where, each.probability) for each in found] == ([(RAIL, chance)] if told else [])
+    assert power_allowed(found) is not told
+
+
+@pytest.mark.parametrize(
+    ("reading", "told"),
+    [
+        (read("zener-test", "open", rail=RAIL), True),
+        (read("zener-test", 18.1, rail=RAIL), False),
+        (read("rail-voltage", 1.31 * 23.1, rail=RAIL), True),
+        (read("rail-voltage", 1.25 * 23.1, rail=RAIL), False),
+        (read("rail-injection", 1.31 * 23.1, rail=RAIL), False),  # what the bench supply was set to
+    ],
+)
+def test_a_reading_that_shows_it_makes_it_sure(reading: Reading, told: bool) -> None:
+    bare = replace(BOARD, rails=tuple(replace(rail, reservoir=None) for rail in BOARD.rails))
+    assert [each.probability for each in suspected(bare, {}, reading)] == ([1.0] if told else [])
+
+
+@pytest.mark.parametrize(("rated", "told"), [(25.0, True), (35.0, False)])
+def test_a_rail_above_its_reservoirs_rating_makes_it_sure(rated: float, told: bool) -> None:
+    """27 V is 1.17 times 23.1 V: above what a whole zener stands at (5 %, and 0.09 %/K for 100 K)."""
+    rails = tuple(replace(rail, reservoir=Reservoir(capacitance=220e-6, rated_voltage=rated)) for rail in BOARD.rails)
+    found = suspected(replace(BOARD, rails=rails), {}, read("rail-voltage", 27.0, rail=RAIL))
+    assert bool(found) is told
+    assert not suspected(replace(BOARD, rails=rails), {}, read("rail-voltage", 25.4, rail=RAIL))
+
+
+@pytest.mark.parametrize(("rectifier", "volts"), [("bridge", "358 V"), ("half-wave", "716 V")])
+def test_it_forbids_to_power_the_board_and_says_how_high_the_rail_climbs(rectifier: str, volts: str) -> None:
+    """√2 · 253 V = 357.8 V, twice that on a half-wave board (SAFETY.md; published values, cautions a bench needs)."""
+    (found,) = suspected(replace(BOARD, rectifier=rectifier), {RAIL: 0.3})
+    told = found.sentence()
+    for words in ("The relay rail zener", "DO NOT POWER", volts, "eye protection", "1000 V", "Discharge"):
+        assert words in told
+    assert safety_findings(BOARD, (read("bleeder-resistance", "open"),), {RAIL: 0.3})[0].fault == "zener-open"
+
+
+def test_a_rail_behind_a_resistor_climbs_no_higher_than_the_one_that_feeds_it() -> None:
+    (found,) = suspected(FULL.board, {"lower": 0.3})
+    assert found.figures == {"climbs_V": 24.0}
+    upper, lower = FULL.board.rails
+    (found,) = suspected(replace(FULL.board, rails=(replace(upper, zener=None), lower)), {"lower": 0.3})
+    assert found.figures["climbs_V"] == pytest.approx(253.0 * 2.0**0.5)
+
+
+def test_the_posterior_is_summed_over_every_hypothesis_with_an_open_zener(monkeypatch: pytest.MonkeyPatch) -> None:
+    draw_few(monkeypatch, 32)
+    posterior = posterior_of(FULL.board, Meter(), ())
+    names = [[struck.fault.name for struck in item.hypothesis.faults] for item in posterior.evidence]
+    wanted = sum(p for p, of in zip(posterior.probabilities, names, strict=True) if "zener-open" in of)
+    chances = zener_open_of(posterior)
+    assert set(chances) == {"upper", "lower"}
+    assert sum(chances.values()) == pytest.approx(wanted)
+
+
+def test_nobody_is_sent_to_live_work_and_a_rail_out_of_hand_does_not_run(monkeypatch: pytest.MonkeyPatch) -> None:
+    draw_few(monkeypatch, 64)
+    found = assess(replace(FULL, readings=(read("zener-test", "open", rail="upper"),)))
+    assert found.safety[0].fault == "zener-open"
+    assert found.next_checks
+    assert {check.condition for check in found.next_checks} == {"dead"}
+    assert next(suspect for suspect in found.suspects if suspect.fault == "zener-open").explains_complaint
+    healthy = assess(replace(FULL, readings=(read("zener-test", 24.0, rail="upper"),)))
+    assert "live" in {check.condition for check in healthy.next_checks}
 
 
 # --- ratings and class

@@ -184,6 +184,20 @@ def test_what_cannot_be_read_is_not_judged() -> None:
     assert (string.bleeder, string.to_limit) == (None, None)
 
 
+def test_a_bleeder_that_was_read_stands_in_the_marks_place() -> None:
+    # By hand: 0.517 µF · 2 Mohm = 1.034 s, rounded up to whole seconds and five of them; read open, nothing empties it.
+    fitted = board(bleeder=0.5e6, in_series=2)
+    found = discharge_of(fitted, 2e6)
+    assert found.bleeder == 2e6
+    assert found.to_limit == pytest.approx(0.517e-6 * 2e6 * np.log(np.sqrt(2.0) * 253.0 / 34.0))
+    assert found.wait == 10.0
+    opened = discharge_of(fitted, np.inf)
+    assert (opened.bleeder, opened.to_limit, opened.left, opened.wait) == (None, None, None, None)
+    assert opened.slow is True
+    assert opened.has_bleeder is False
+    assert discharge_of(fitted, 0.0).to_limit == pytest.approx(0.0, abs=1e-5)
+
+
 def test_a_bleeder_that_cannot_be_read_is_neither_slow_nor_quick() -> None:
     # It is there: "None where that cannot be known", as `Discharge.slow` says itself.
     assert discharge_of(replace(board(), bleeder=Bleeder(resistance=UNKNOWN))).slow is None

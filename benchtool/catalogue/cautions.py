@@ -14,22 +14,26 @@ from benchtool.quantities import show, show_up
 DEFERS = "Local codes and licensed practice come first."
 
 
-def cautions(board: Board, *, ascii: bool = False) -> tuple[str, ...]:
-    """The standing cautions for `board`, isolation first, then discharge. Times are rounded up."""
-    discharge = discharge_of(board)
+def cautions(board: Board, *, bleeder_read: float | None = None, ascii: bool = False) -> tuple[str, ...]:
+    """The standing cautions for `board`, isolation first, then discharge. Times are rounded up.
+
+    `bleeder_read` [ohm]: the bleeder as it was read, infinite for open, None where it was not.
+    """
+    discharge = discharge_of(board, bleeder_read)
+    bleeder = "if its bleeder is whole" if bleeder_read is None else "through its bleeder as read"
     mains = show(board.mains.voltage * (1.0 + board.mains.variation), "V", ascii=ascii)
     dead = show(known.DEAD_VOLTS, "V", ascii=ascii)
     return (
         f"NOT ISOLATED: every point of this board, common included, can be at {mains} to earth. Power it on the bench only "
         "through an isolating transformer, with no earthed instrument on it; isolated is not shock-free, two points still kill.",
-        f"STORED CHARGE: {_stored(discharge, ascii)} Unplug, {_wait(discharge, ascii)}discharge the dropper and every "
-        f"reservoir through 10 k{'ohm' if ascii else 'Ω'}, then measure on a DC range: each of them and the plug pins must be "
-        f"under {dead}.",
+        f"STORED CHARGE: {_stored(discharge, bleeder, ascii)} Unplug, {_wait(discharge, ascii)}discharge the dropper and "
+        f"every reservoir through 10 k{'ohm' if ascii else 'Ω'} 5 W, held on for 15 s, then measure: each of them and the plug "
+        f"pins must be under {dead} on a DC range, an AC range reads a charge as zero. Prove the meter before and after.",
         DEFERS,
     )
 
 
-def _stored(discharge: Discharge, ascii: bool) -> str:
+def _stored(discharge: Discharge, bleeder: str, ascii: bool) -> str:
     if discharge.capacitance is None and discharge.energy is None and not discharge.limited:
         return "reservoirs stay charged after unplugging."
     volts = show_up(discharge.start, "V", digits=3, ascii=ascii)
@@ -37,7 +41,8 @@ def _stored(discharge: Discharge, ascii: bool) -> str:
         return f"the dropper may hold {volts} for hours; nothing known empties it."
     limit = show(known.PLUG_LIMIT_VOLTS, "V", ascii=ascii)
     seconds = show_up(discharge.to_limit, "s", ascii=ascii)
-    return f"the dropper may hold {volts} after unplugging; by this supply alone it falls to {limit} in up to {seconds}."
+    falls = f"by this supply alone it falls to {limit} in up to {seconds} {bleeder}"
+    return f"the dropper may hold {volts} after unplugging; {falls}."
 
 
 def _wait(discharge: Discharge, ascii: bool) -> str:

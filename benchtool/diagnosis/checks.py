@@ -30,8 +30,8 @@ WORTH = 0.005
 """Gains below this are noise [bit]."""
 COUNTS_FROM = 1e-4
 """Share of all that is explained from which a hypothesis counts for the gain."""
-LIVE_PENALTY = 0.7
-"""A live check must tell that much more than a dead one of like use: share of its gain that counts."""
+LIVE_PENALTY = 0.5
+"""Dead before live: share of a live check's gain that counts, so that it comes first only if it tells twice as much a minute."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -88,16 +88,21 @@ def minutes_of(check: Check, last_condition: str | None) -> float:
     return minutes
 
 
-def next_checks(posterior: Posterior, taken: Sequence[Check]) -> tuple[NextCheck, ...]:
-    """Checks not yet made, the most useful a minute first; dead checks before live ones of like use."""
+def next_checks(posterior: Posterior, taken: Sequence[Check], *, power_allowed: bool = True) -> tuple[NextCheck, ...]:
+    """Checks not yet made, the most useful a minute first; dead checks before live ones of like use.
+
+    `power_allowed`: whether the board may be powered at all; if not, no live check is proposed.
+    """
     weigher = _Weigher(posterior)
     last = READING_KINDS[taken[-1].what].condition if taken else None
     found = []
     for check in candidates(posterior.board, taken):
+        condition = READING_KINDS[check.what].condition
+        if condition == "live" and not power_allowed:
+            continue
         gain = weigher.gain(check)
         if gain > WORTH:
-            kind = READING_KINDS[check.what]
-            found.append(NextCheck(check, kind.condition, gain, minutes_of(check, last)))
+            found.append(NextCheck(check, condition, gain, minutes_of(check, last)))
     return tuple(sorted(found, key=_usefulness, reverse=True))
 
 

@@ -7,7 +7,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from benchtool.board import Board
+from benchtool.board import Board, Rail, nominal_voltage
 from benchtool.catalogue.readings import READING_KINDS
 from benchtool.catalogue.shows import SHOWS, Shown, runs
 from benchtool.diagnosis.likelihood import accuracy_of
@@ -23,6 +23,8 @@ MOSTLY = 0.5
 """Share of the specimens that must show a word before the word is told in place of a range."""
 WORDS_TOLD = 0.25
 """Chance from which a word is told among several."""
+TOO_HIGH = 1.5
+"""Times its nominal voltage from which a rail is out of hand, whatever still works on it; common practice, no source."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -103,10 +105,23 @@ def _alone(item: Evidence, row: int) -> float:
 
 
 def fails_to_run(item: Evidence, board: Board) -> bool:
-    """Whether boards with this hypothesis, as the readings leave them, mostly fail to run their marked loads once warm."""
+    """Whether boards with this hypothesis, as the readings leave them, mostly fail to run their marked loads once warm.
+
+    A board with a rail too high, its loads on or off, does not run: it destroys itself.
+    """
     on = board.switched_loads()
     works = np.ones(item.bench.specimens.count)
+    for index, rail in enumerate(board.rails):
+        highest = _highest_held(board, rail)
+        for state in ((), on):
+            works[item.bench.settled(state, warm=True).rail_voltage[index] > highest] = 0.0
     for load in range(len(board.loads)):
         meant, unasked = runs(item.bench, board, load, on, warm=True)
         works = np.minimum(works, meant * (1.0 - unasked))
     return float(np.sum(item.shares() * works)) < 0.5
+
+
+def _highest_held(board: Board, rail: Rail) -> float:
+    """Volts above which a rail stands too high: its reservoir's rating, or `TOO_HIGH` times its nominal voltage [V]."""
+    nominal, rated = nominal_voltage(board, rail), rail.reservoir.rated_voltage if rail.reservoir is not None else None
+    return min(np.inf if nominal is None else TOO_HIGH * nominal, np.inf if rated is None else rated)

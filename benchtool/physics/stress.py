@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 
 import numpy as np
@@ -45,11 +46,18 @@ def highest_crest(board: Board) -> float:
     return float(np.sqrt(2.0)) * board.mains.voltage * (1.0 + board.mains.variation)
 
 
+TIME_CONSTANTS = 5.0
+"""Time constants to wait before the discharge by hand: 0.7 % of the crest is left. Common practice, no source."""
+SHORTEST_BLEEDER = 1.0
+"""A bleeder read under this counts as this [ohm]: no meter tells it from its leads."""
+
+
 @dataclass(frozen=True, slots=True)
 class Discharge:
     """What the dropper keeps after unplugging, in the slowest corner: capacitance [F], bleeder [ohm], times [s].
 
-    None where a value cannot be known; `bleeder` and the times are None as well where `has_bleeder` is false. `left` [V] is
+    None where a value cannot be known; `bleeder` and the times are None as well where `has_bleeder` is false: none is fitted,
+    or it was read open. `wait` is in whole `TIME_CONSTANTS` seconds. `left` [V] is
     what the pins still hold when the limit's time is over. `limited`: whether a limit at the plug applies at all
     (plug-connected and over 0.1 µF).
     """
@@ -74,15 +82,18 @@ class Discharge:
         return None if self.has_bleeder else True
 
 
-def discharge_of(board: Board) -> Discharge:
-    """The dropper's discharge through its bleeder: highest crest, dropper and bleeder at the high end of their tolerance."""
-    capacitance, bleeder = _highest_capacitance(board), _highest_bleeder(board)
+def discharge_of(board: Board, bleeder_read: float | None = None) -> Discharge:
+    """The dropper's discharge through its bleeder: highest crest, dropper and bleeder at the high end of their tolerance.
+
+    `bleeder_read` [ohm] is what the whole string was read as, infinite for open; it stands in the mark's place.
+    """
+    capacitance, bleeder = _highest_capacitance(board), _bleeder(board, bleeder_read)
     start = highest_crest(board)
     time, wait, left = None, None, None
     if capacitance is not None and bleeder is not None:
         time = float(laws.discharge_time(start, bleeder, capacitance, known.PLUG_LIMIT_VOLTS))
         left = float(laws.discharge_voltage(start, bleeder, capacitance, known.PLUG_LIMIT_SECONDS))
-        wait = max(5.0, 5.0 * float(np.ceil(bleeder * capacitance)))
+        wait = TIME_CONSTANTS * float(np.ceil(bleeder * capacitance))
     return Discharge(
         start=start,
         capacitance=capacitance,
@@ -92,7 +103,7 @@ def discharge_of(board: Board) -> Discharge:
         wait=wait,
         energy=None if capacitance is None else 0.5 * capacitance * start**2,
         limited=_limited(board),
-        has_bleeder=board.bleeder is not None,
+        has_bleeder=board.bleeder is not None and bleeder_read != math.inf,
     )
 
 
@@ -110,6 +121,12 @@ def _highest_capacitance(board: Board) -> float | None:
         return None
     fitted = board.dropper.fitted or 0.0
     return max(value, fitted) * (1.0 + dropper_tolerance(board))
+
+
+def _bleeder(board: Board, read: float | None) -> float | None:
+    if read is None or board.bleeder is None:
+        return _highest_bleeder(board)
+    return None if read == math.inf else max(read, SHORTEST_BLEEDER)
 
 
 def _highest_bleeder(board: Board) -> float | None:

@@ -155,9 +155,15 @@ def budget_lines(budget: Budget, effective: Effective, words: Words, page: Page)
     """The budget as a bar with its figures, every switched load on; one row on a narrow page."""
     if budget.available is None and budget.demand is None and effective.current_low is None:
         return paragraph(page, f"Current budget: {CANNOT_TELL} from what is marked on the board.")
-    if page.narrow:
-        return _one_row(budget, effective, words, page)
-    return list(_rows(budget, effective, words, page))
+    rows = _one_row if page.narrow else _rows
+    return [*rows(budget, effective, words, page), *_short_by_its_marks(budget, words, page)]
+
+
+def _short_by_its_marks(budget: Budget, words: Words, page: Page) -> list[Line]:
+    if budget.margin is None or budget.margin >= 0.0:
+        return []
+    held = " with ".join(part for part in (words.rail(words.board.rails[0].name), words.state(budget.on)) if part)
+    return paragraph(page, f"By its marks this board cannot hold {held}: check the values typed, or it was built so.")
 
 
 def _greatest(*currents: float | None) -> float:
@@ -196,6 +202,7 @@ def _rows(budget: Budget, effective: Effective, words: Words, page: Page) -> Ite
         yield _bar_row(page, label, difference.figure(scale), difference.bar(scale))
     if need is not None and need.legend:
         yield from paragraph(page, ", ".join(need.legend), first=" " * LABEL)
+    yield from paragraph(page, f"{MAYBE} over mains and tolerance", first=" " * LABEL)
 
 
 def _gets(effective: Effective, scale: Scale) -> tuple[str, str]:
@@ -221,7 +228,8 @@ def _difference(budget: Budget, effective: Effective) -> Difference | None:
 
 
 def _bar_row(page: Page, label: str, figure: str, bar: str) -> Line:
-    return Line(page_bar(page, f" {label}{figure:>{LABEL - 4 - len(label)}}   {bar}").rstrip())
+    before = f" {label} {figure:>{max(LABEL - 5 - len(label), 0)}}"
+    return Line(page_bar(page, f"{padded(before, LABEL - 1)} {bar}").rstrip())
 
 
 def page_bar(page: Page, text: str) -> str:
@@ -249,13 +257,13 @@ def _one_row(budget: Budget, effective: Effective, words: Words, page: Page) -> 
     rough = Scale(LEAST_NARROW_CELL, 0)
     name = "marked" if not measured else "mains" if by_line(effective) else "gets"
     before = f"{name} {CANNOT_TELL if nominal is None else milliamps(nominal)} "
-    needs = f"needs {CANNOT_TELL if budget.demand is None else milliamps(budget.demand)}"
+    demand = CANNOT_TELL if budget.demand is None else milliamps(budget.demand)
     gap = "" if difference is None else f"{difference.word(rough).removesuffix(' BY')} {difference.figure(rough)}"
-    after = f"{needs} {gap}".rstrip()
+    after = f"need {demand} mA {gap}".rstrip()
     room = page.width - cells(before) - cells(after) - 1
     if room < LEAST_ROOM or low is None:
         heading = _heading(page, "BUDGET", words.state(budget.on), "mA")
-        told = [part for part in (f"{before.strip()}, {needs}", gap) if part]
+        told = [part for part in (f"{before.strip()}, needs {demand}", gap) if part]
         return [*heading, *(line for part in told for line in paragraph(page, part, first=" ", rest="  "))]
     scale = scale_for(_greatest(high, low), room, LEAST_NARROW_CELL)
     bar = page_bar(page, supply_bar(low, high, scale))

@@ -32,7 +32,7 @@ LITTLE = 0.1
 
 CONDITIONS = {
     "dead": "Unplug, discharge and measure before it.",
-    "live": "Only through an isolating transformer; unplug and discharge after it.",
+    "live": "Only through an isolating transformer; clip on with the power off, one hand; unplug and discharge after it.",
 }
 
 
@@ -131,15 +131,22 @@ def disagreement_lines(items: Sequence[Disagreement], words: Words, page: Page) 
 def next_lines(
     checks: Sequence[NextCheck], suspects: Sequence[Suspect], words: Words, page: Page
 ) -> list[Line]:
-    """The check to make next, what it costs and tells, and two to follow."""
+    """The check to make next, what it costs and tells, and two to follow, among them the best dead one."""
     if not checks:
         return paragraph(page, "no further check would tell much about these suspects.", first="NEXT  ")
-    first, *others = checks
+    first, *others = _with_a_dead_one(checks)
     text = f"{_costs(first, words)}. {CONDITIONS[first.condition]} {tells(first, suspects)}"
     lines = paragraph(page, text, first="NEXT  ")
-    for number, check in enumerate(others[:THEN]):
+    for number, check in enumerate(others):
         lines.extend(paragraph(page, f"{_costs(check, words)}.", first="then  " if number == 0 else "      "))
     return lines
+
+
+def _with_a_dead_one(checks: Sequence[NextCheck]) -> list[NextCheck]:
+    """The checks to show: the first ones, the last of them giving way to the best dead one where all are live."""
+    shown, rest = list(checks[: 1 + THEN]), checks[1 + THEN :]
+    dead = [check for check in rest if check.condition == "dead"]
+    return [*shown[:-1], dead[0]] if dead and all(check.condition == "live" for check in shown) else shown
 
 
 def _costs(item: NextCheck, words: Words) -> str:

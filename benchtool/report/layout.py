@@ -154,7 +154,7 @@ def paragraph(page: Page, text: str, *, first: str = "", rest: str | None = None
 def row(page: Page, columns: Sequence[str], widths: Sequence[int], *, role: Role = "body") -> list[Line]:
     """One row of a table: every cell wrapped inside its own column, the first one's further lines set in."""
     first, *others = (page.plain(cell) for cell in columns)
-    head, *more = wrapped(first, widths[0], widths[0] - 2)
+    head, *more = [first] if cells(first) <= widths[0] else wrapped(first, widths[0], widths[0] - 2)
     wrapped_cells = [[head, *(f"  {line}" for line in more)]]
     wrapped_cells.extend(wrapped(cell, width) for cell, width in zip(others, widths[1:], strict=True))
     lines = []
@@ -165,10 +165,14 @@ def row(page: Page, columns: Sequence[str], widths: Sequence[int], *, role: Role
 
 
 def table(page: Page, rows: Sequence[Sequence[str]], most: int = 18) -> list[Line]:
-    """A table, its first row the heading; columns after the first as wide as they need, up to `most`, the first gets the rest."""
+    """A table, its first row the heading; columns after the first as wide as they need, up to `most`, the first gets the rest.
+
+    Where the rest is less than the first one's heading, the widest of the others give way.
+    """
     needs = [max(cells(page.plain(cell)) for cell in column) for column in zip(*rows, strict=True)]
-    others = [min(need, most) for need in needs[1:]]
-    room = page.width - 1 - sum(width + 2 for width in others)
+    others, least = [min(need, most) for need in needs[1:]], cells(page.plain(rows[0][0]))
+    while (room := page.width - 1 - sum(width + 2 for width in others)) < least:
+        others[others.index(max(others))] -= 1
     widths = [min(needs[0], room), *others]
     lines = row(page, rows[0], widths, role="heading")
     for columns in rows[1:]:

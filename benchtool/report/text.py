@@ -7,7 +7,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
-from benchtool.board import Unknown
+from benchtool.board import Board, Unknown
 from benchtool.case import Case
 from benchtool.diagnosis.effective import Effective
 from benchtool.quantities import show
@@ -30,6 +30,14 @@ HALF_A_PERCENT = 0.005
 """What is shown as 50 % counts as such."""
 SURE_ENOUGH = 0.9
 """Probability from which a repair comes before another check."""
+CAUSED_FROM = 0.2
+"""Probability from which a part that seldom fails by itself is told to have a cause."""
+CAUSED = ("fuse-open", "inrush-open", "varistor-short")
+HAS_A_CAUSE = "A blown fuse or fusible resistor has a cause: find the short first. Replace like for like."
+REPLACED = ("dropper-capacitance-lost", "dropper-open", "wrong-part")
+"""Faults that a new dropper as marked puts right."""
+NO_MAINS = 0.1
+"""Share of nominal under which the mains that were read did not reach the board."""
 GAP = (Line(""),)
 
 
@@ -98,7 +106,23 @@ def case_lines(case: Case, page: Page) -> list[Line]:
 def headline_lines(assessment: Assessment, page: Page) -> list[Line]:
     """One headline to act on, and the sentence that says how."""
     head, rest, action = _headline(assessment)
+    if _no_mains(assessment.case) and assessment.cannot is None:
+        action = "No mains reached the board while reading: plug, fuse, transformer."
+    action = " ".join([action, *_cause(assessment.suspects)])
     return [*paragraph(page, rest, first=f"{head}  ", rest="  ", role="headline"), *paragraph(page, action)]
+
+
+def _no_mains(case: Case) -> bool:
+    read = [reading.value for reading in case.readings if reading.what == "mains-voltage"]
+    return bool(read) and isinstance(read[-1], float) and read[-1] < NO_MAINS * case.board.mains.voltage
+
+
+def _cause(suspects: tuple[Suspect, ...]) -> Iterator[str]:
+    """What to look for before a blown part is replaced."""
+    best = suspects[0] if suspects else None
+    if best is not None and best.hypothesis is not None and best.probability >= CAUSED_FROM:
+        blown = any(struck.fault.name in CAUSED for struck in best.hypothesis.faults)
+        yield from [HAS_A_CAUSE] if blown else []
 
 
 def _headline(assessment: Assessment) -> tuple[str, str, str]:
@@ -117,10 +141,12 @@ def _headline(assessment: Assessment) -> tuple[str, str, str]:
         return "UNEXPLAINED", f"{share}: no single fault accounts for these readings", _doubt(assessment)
     if not named(best):
         return "THIS SUPPLY DOES WHAT IT SHOULD", share, _elsewhere(assessment)
-    return "MOST LIKELY", f"{best.label} ({share})", _action(best, may_run(assessment))
+    return "MOST LIKELY", f"{best.label} ({share})", _action(best, assessment)
 
 
 def _doubt(assessment: Assessment) -> str:
+    if len(_told_by(assessment.suspects).because) == 1:
+        return "It fits no fault on the list: take it again, or check the values typed."
     again = "Take the readings that disagree again" if assessment.disagreements else "Take the doubtful one again"
     return f"One of them is wrong, or several parts are. {again} before any part is replaced."
 
@@ -140,14 +166,30 @@ def may_run(assessment: Assessment) -> bool:
     return effective is None or effective.current_high is None or effective.current_high >= budget.demand
 
 
-def _action(best: Suspect, runs: bool) -> str:
-    if best.probability >= SURE_ENOUGH:
-        words = "Put this right first, then take the same readings again."
+def _action(best: Suspect, assessment: Assessment) -> str:
+    if assessment.disagreements:
+        words = "The readings disagree: settle that first."
+    elif best.probability >= SURE_ENOUGH:
+        words = " ".join(["Put this right first, then take the same readings again.", *_replacement(best, assessment.case.board)])
     else:
         words = "Likely, not sure: make the next check before any part is replaced."
-    if best.explains_complaint or not runs:
+    if best.explains_complaint or not may_run(assessment):
         return words
     return f"{words} By the figures the marked loads still run with it: if the complaint stays, look further."
+
+
+def _replacement(best: Suspect, board: Board) -> Iterator[str]:
+    """What to fit in the place of a dropper that has failed, as far as its mark can be read."""
+    dropper = board.dropper
+    marked = dropper.resistance if dropper.kind == "resistor" else dropper.capacitance
+    if best.fault not in REPLACED or not isinstance(marked, float):
+        return
+    if dropper.kind == "resistor":
+        power = "" if dropper.rated_power is None else f", {show(dropper.rated_power, 'W')}"
+        yield f"Fit {show(marked, 'ohm')}{power}, flameproof (what the board is marked with)."
+        return
+    safety_class = dropper.safety_class if dropper.safety_class not in (None, "none") else "X2"
+    yield f"Fit {show(marked, 'F')}, class {safety_class}, its data sheet allowing series duty (what the board is marked with)."
 
 
 def effective_lines(assessment: Assessment, words: Words, page: Page) -> list[Line]:
@@ -188,7 +230,7 @@ def _against(assessment: Assessment, words: Words) -> Iterator[str]:
         if budget is not None and board.rails[0].zener is not None:
             dropout = budget.dropout_capacitance
             known = dropout is not None
-            yield f"The rail drops out under {show(dropout, 'F')}." if known else f"Where the rail drops out: {CANNOT_TELL}."
+            yield f"The rail lets go under {show(dropout, 'F')}." if known else f"Where the rail lets go: {CANNOT_TELL}."
         marked = dropper.capacitance
         yield f"Marked {'unreadable' if marked is None or isinstance(marked, Unknown) else show(marked, 'F')}."
     for reading in assessment.case.readings:
