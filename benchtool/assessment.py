@@ -12,7 +12,6 @@ import numpy as np
 from benchtool.board import Board
 from benchtool.case import Case
 from benchtool.catalogue.cautions import cautions
-from benchtool.catalogue.shows import SHOWS
 from benchtool.diagnosis.checks import next_checks
 from benchtool.diagnosis.disagreement import disagreements
 from benchtool.diagnosis.effective import effective_of
@@ -23,9 +22,7 @@ from benchtool.observed import Reading
 from benchtool.physics.bench import Bench
 from benchtool.physics.budget import agreed, budget_of, regulating
 from benchtool.physics.laws import Array
-from benchtool.physics.ripple import UNCERTAIN
 from benchtool.physics.settled import Settled
-from benchtool.physics.shape import not_computed, shape_of
 from benchtool.physics.specimens import as_marked, population
 from benchtool.physics.stress import mains_power
 from benchtool.result import Assessment, RailState, State, Suspect
@@ -33,18 +30,12 @@ from benchtool.result import Assessment, RailState, State, Suspect
 BAND_DRAWN = 512
 """Healthy boards behind the bands of the states table."""
 BAND = (2.5, 97.5)
-RMS_OF_TRIANGLE = float(np.sqrt(12.0))
-"""Peak to peak over RMS of a triangle, the form of ripple that is estimated."""
 
 
 def assess(case: Case) -> Assessment:
     """The verdict on `case`. A valid case always gets one, whatever was read on it."""
     board, readings = case.board, case.readings
-    standing, safety = cautions(board, bleeder_read=bleeder_read(readings)), safety_findings(board, readings)
-    missing = not_computed(shape_of(board))
-    if missing:
-        cannot = f"This board has {' and '.join(missing)}: benchtool cannot compute that yet."
-        return Assessment(case=case, cautions=standing, safety=safety, cannot=cannot)
+    standing = cautions(board, bleeder_read=bleeder_read(readings))
     posterior = posterior_of(board, case.meter, readings)
     safety = safety_findings(board, readings, zener_open_of(posterior))
     return Assessment(
@@ -57,7 +48,6 @@ def assess(case: Case) -> Assessment:
         suspects=_suspects(posterior, case),
         disagreements=disagreements(posterior),
         next_checks=next_checks(posterior, [reading.check for reading in readings], power_allowed=power_allowed(safety)),
-        unused=tuple(reading for reading in readings if reading.what not in SHOWS and reading.what != "look"),
     )
 
 
@@ -100,25 +90,34 @@ def _state(board: Board, on: tuple[str, ...], marked: Bench, healthy: Bench) -> 
 
 
 def _rail_state(board: Board, index: int, settled: Settled, band: Settled) -> RailState:
-    ripple = agreed(settled.ripple_pp[index])
-    solved = band.rail_voltage[index][band.converged]
-    low, high = np.percentile(solved, BAND) if solved.size else (None, None)
+    low, high = _band(band.rail_voltage[index], band)
+    ripple_low, ripple_high = _band(band.ripple_pp[index], band)
+    known = bool(settled.converged.all())
     regulates = regulating(settled, index)
     same = regulates is not None and bool(np.all(regulates == regulates[0]))
     has_zener = settled.specimens.shape.rails[index].has_zener
     return RailState(
         name=board.rails[index].name,
-        voltage=agreed(settled.rail_voltage[index]) if settled.converged.all() else None,
-        voltage_low=None if low is None else float(low),
-        voltage_high=None if high is None else float(high),
-        ripple_pp=ripple,
-        ripple_pp_low=None if ripple is None else ripple * (1.0 - UNCERTAIN),
-        ripple_pp_high=None if ripple is None else ripple * (1.0 + UNCERTAIN),
-        ripple_rms=None if ripple is None else ripple / RMS_OF_TRIANGLE,
+        voltage=agreed(settled.rail_voltage[index]) if known else None,
+        voltage_low=low,
+        voltage_high=high,
+        ripple_pp=agreed(settled.ripple_pp[index]) if known else None,
+        ripple_pp_low=ripple_low,
+        ripple_pp_high=ripple_high,
+        ripple_rms=agreed(settled.ripple_rms[index]) if known else None,
         regulating=bool(regulates[0]) if regulates is not None and same else None,
         zener_current=agreed(settled.zener_current[index]) if has_zener else None,
         zener_power=agreed(settled.zener_power[index]) if has_zener else None,
     )
+
+
+def _band(values: Array, healthy: Settled) -> tuple[float | None, float | None]:
+    """The 95 % band of healthy boards' `values`; None where none of them settles."""
+    solved = values[healthy.converged]
+    if not solved.size:
+        return None, None
+    low, high = np.percentile(solved, BAND)
+    return float(low), float(high)
 
 
 def _suspects(posterior: Posterior, case: Case) -> tuple[Suspect, ...]:

@@ -12,7 +12,7 @@ from benchtool.diagnosis.effective import Effective
 from benchtool.diagnosis.evidence import Because
 from benchtool.diagnosis.hypotheses import Hypothesis, Struck
 from benchtool.diagnosis.safety import Finding
-from benchtool.observed import Check, Reading
+from benchtool.observed import Check
 from benchtool.physics.budget import Budget
 from benchtool.words import Words, expected_text, read_text
 
@@ -23,10 +23,7 @@ Plain = dict[str, object]
 
 @dataclass(frozen=True, slots=True)
 class RailState:
-    """One rail in one state, as marked [V, A, W]; low and high: the 95 % band of healthy boards. None: cannot be known.
-
-    The ripple is an estimate and carries its own low and high.
-    """
+    """One rail in one state, as marked [V, A, W]; low and high: the 95 % band of healthy boards. None: cannot be known."""
 
     name: str
     voltage: float | None
@@ -157,33 +154,29 @@ def _because(row: Because) -> Plain:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Assessment:
-    """Everything said about one case. Where the physics cannot compute the board, `cannot` says so and the rest is empty."""
+    """Everything said about one case."""
 
     case: Case
     cautions: tuple[str, ...]
     safety: tuple[Finding, ...]
-    cannot: str | None = None
     states: tuple[State, ...] = ()
     budget: Budget | None = None
     effective: Effective | None = None
     suspects: tuple[Suspect, ...] = ()
     disagreements: tuple[Disagreement, ...] = ()
     next_checks: tuple[NextCheck, ...] = ()
-    unused: tuple[Reading, ...] = ()
 
     def as_dict(self) -> Plain:
         """The machine-readable result: SI units named in the keys, numbers not rounded, None where nothing can be known."""
         return {
             "format": FORMAT,
             "case": self.case.ticket.number,
-            "cannot": self.cannot,
             "states": [state.as_dict() for state in self.states],
             "budget": None if self.budget is None else _budget(self.budget),
             "effective": None if self.effective is None else _effective(self.effective),
             "suspects": [suspect.as_dict() for suspect in self.suspects],
             "disagreements": [_disagreement(item, Words(self.case.board)) for item in self.disagreements],
             "next_checks": [_next_check(item) for item in self.next_checks],
-            "unused_readings": [_check(reading) for reading in self.unused],
             "safety": [_finding(finding) for finding in self.safety],
             "cautions": list(self.cautions),
         }

@@ -13,7 +13,7 @@ from benchtool.board import Board
 from benchtool.catalogue.readings import READING_KINDS
 from benchtool.diagnosis import effective, posterior
 from benchtool.observed import Reading, ReadingValue
-from benchtool.physics import budget, mean_value
+from benchtool.physics import budget, mean_value, waveform
 
 CONTRACT = casefile.loads((Path(__file__).parent / "data" / "contract.toml").read_text(encoding="utf-8"))
 """The case file of the case format's section 1."""
@@ -90,6 +90,9 @@ def draw_few(monkeypatch: pytest.MonkeyPatch, count: int, *, coarse: bool = Fals
         monkeypatch.setattr(mean_value, "MOST_STEPS", 12)
         monkeypatch.setattr(mean_value, "WARMING_STEPS", 1)
         monkeypatch.setattr(budget, "BISECTIONS", 2)
+        monkeypatch.setattr(waveform, "STEPS", 8)
+        monkeypatch.setattr(waveform, "FINE_STEPS", 16)
+        monkeypatch.setattr(waveform, "MOST_CYCLES", 2)
 
 
 @cache

@@ -180,12 +180,11 @@ def test_a_case_without_readings_has_no_suspect_but_a_next_check() -> None:
     assert "MOST LIKELY" not in text
 
 
-def test_a_board_that_cannot_be_computed_still_gets_its_cautions() -> None:
+def test_a_board_with_a_divided_dropper_gets_its_cautions_and_a_verdict() -> None:
     divided = TEMPLATE.replace('kind = "capacitor"', 'kind = "divider"\nshunt_capacitance = "1 uF"')
     text = flowed(assessed_once(loads(divided)), Page(40))
     assert text.startswith("NOT ISOLATED")
-    assert "NO VERDICT This board has a divided dropper: benchtool cannot compute that yet." in text
-    assert "SUSPECTS" not in text
+    assert "divider's second capacitor" in text
 
 
 def test_what_cannot_be_known_is_told_in_words() -> None:

@@ -73,8 +73,8 @@ BOARD_HAS: dict[str, tuple[Callable[[Board], bool], str]] = {
 }
 RAIL_HAS: dict[str, tuple[Callable[[Rail], bool], str]] = {
     "feed-resistance": (
-        lambda rail: rail.fed_through in ("resistor", "regulator", UNREAD),
-        "this rail is not fed through a resistor or regulator",
+        lambda rail: rail.fed_through in ("resistor", UNREAD),
+        "this rail is not fed through a resistor",
     ),
     "zener-test": (lambda rail: rail.zener is not None, _bare("zener")),
     "reservoir-capacitance": (lambda rail: rail.reservoir is not None, _bare("reservoir")),

@@ -79,6 +79,10 @@ def _fed(board: Board, index: int) -> bool:
     return board.rails[index].fed_through in ("resistor", "regulator")
 
 
+def _by_resistor(board: Board, index: int) -> bool:
+    return board.rails[index].fed_through == "resistor"
+
+
 def _coil(board: Board, index: int) -> bool:
     return board.loads[index].kind == "coil"
 
@@ -126,7 +130,7 @@ FAULTS: tuple[Fault, ...] = (
     Fault("reservoir-leaky", "reservoir:{name}", "{name} reservoir: leaky", 15, 40, BULGED, _rails(_reservoir), strikes.reservoir_leaky),
     Fault("board-leakage", "rail:{name}", "{name}: leakage over the board", 8, 70, "residue", _rails(_any), strikes.board_leakage),
     Fault("feed-open", "feed:{name}", "{name} feed: open", 10, 30, BROWNED, _rails(_fed), strikes.feed_open),
-    Fault("feed-high", "feed:{name}", "{name} feed: risen", 5, 30, BROWNED, _rails(_fed), strikes.feed_high),
+    Fault("feed-high", "feed:{name}", "{name} feed: risen", 5, 30, BROWNED, _rails(_by_resistor), strikes.feed_high),
     Fault("feed-short", "feed:{name}", "{name} feed: shorted", 4, 15, BROWNED, _rails(_fed), strikes.feed_short),
     Fault("load-excess", "load:{name}", "{name}: draws too much", 15, 10, BROWNED, _loads(_any), strikes.load_excess),
     Fault("load-open", "load:{name}", "{name}: draws nothing", 5, 10, BROWNED, _loads(_not_coil), strikes.load_open),

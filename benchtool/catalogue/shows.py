@@ -18,15 +18,18 @@ from benchtool.physics import branches
 from benchtool.physics import constants as known
 from benchtool.physics.bench import Bench
 from benchtool.physics.laws import Array, Flags, copper_ratio
-from benchtool.physics.mean_value import COIL_WARM_KELVIN
+from benchtool.physics.network import COIL_WARM_KELVIN
+from benchtool.physics.ripple import UNCERTAIN
 from benchtool.physics.specimens import Junction, Specimens, Switch
 
 RAIL_ERROR, RAIL_ERROR_FLOOR = 0.008, 0.05
-"""One sigma of the mean-value physics on a smooth rail: share, and volts."""
-RIPPLE_ERROR = 0.35
+"""One sigma of the physics on a rail's mean, as a crowd is settled: share, and volts."""
+SAG_ERROR, ROUGH_FROM = 0.4, 0.10
+"""One sigma of the sag that a rough rail's zener makes by clipping the crests, as a share of its ripple over `ROUGH_FROM`."""
+RIPPLE_ERROR, RIPPLE_ERROR_FLOOR = UNCERTAIN, 0.005
 LINE_ERROR = 0.015
-PULLED_DOWN = 10.0
-"""A rail whose ripple exceeds this share of its mean, in percent, is not smooth."""
+UNSOLVED = 0.2
+"""One sigma, as a share, of a specimen whose cycle did not repeat."""
 RAMP_SECONDS = 0.3
 """Longest window of meters that ramp at constant current; common practice, no source. Half of all meters do not ramp."""
 SURE = 0.96
@@ -78,19 +81,20 @@ def _mains(bench: Bench, board: Board, check: Check) -> Shown:
 def _rail_voltage(bench: Bench, board: Board, check: Check) -> Shown:
     settled, index = bench.settled(check.on, warm=_warm(check)), _rail(board, check)
     value, ripple = settled.rail_voltage[index], settled.ripple_pp[index]
-    rough = np.maximum(ripple - 0.01 * PULLED_DOWN * np.abs(value), 0.0)
-    unsolved = np.where(settled.converged, 0.0, 0.2 * np.abs(value))
-    return Shown(value, np.hypot(RAIL_ERROR * np.abs(value) + RAIL_ERROR_FLOOR, 0.4 * rough) + unsolved)
+    clips = settled.zener_current[index] > known.REGULATES_FROM
+    rough = np.where(clips, np.maximum(ripple - ROUGH_FROM * np.abs(value), 0.0), 0.0)
+    unsolved = np.where(settled.converged, 0.0, UNSOLVED * np.abs(value))
+    return Shown(value, np.hypot(RAIL_ERROR * np.abs(value) + RAIL_ERROR_FLOOR, SAG_ERROR * rough) + unsolved)
 
 
 def _ripple(bench: Bench, board: Board, check: Check) -> Shown:
     value = bench.settled(check.on, warm=_warm(check)).ripple_pp[_rail(board, check)]
-    return Shown(value, RIPPLE_ERROR * value)
+    return Shown(value, RIPPLE_ERROR * value + RIPPLE_ERROR_FLOOR)
 
 
 def _ripple_rms(bench: Bench, board: Board, check: Check) -> Shown:
-    value = bench.settled(check.on, warm=_warm(check)).ripple_pp[_rail(board, check)] / np.sqrt(12.0)
-    return Shown(value, RIPPLE_ERROR * value)
+    value = bench.settled(check.on, warm=_warm(check)).ripple_rms[_rail(board, check)]
+    return Shown(value, RIPPLE_ERROR * value + RIPPLE_ERROR_FLOOR / 2.0)
 
 
 def _line_current(bench: Bench, board: Board, check: Check) -> Shown:
@@ -281,6 +285,30 @@ def _rail_leakage(bench: Bench, board: Board, check: Check) -> Shown:
     return Shown(value, 0.05 * value + 5e-6)
 
 
+INJECTION_CLAMP, INJECTION_OVER = 0.020, 1.2
+"""Default current limit of rail-injection [A], and its voltage limit over the rail's nominal voltage; the case format."""
+INJECTION_UNKNOWN = 12.0
+"""Voltage limit where the rail has no nominal voltage [V]."""
+
+
+def injection_limits(board: Board, check: Check) -> tuple[float, float]:
+    """Current [A] and voltage [V] limit of a rail-injection, as stated or by default, never above the reservoir's rating."""
+    rail = board.rails[_rail(board, check)]
+    nominal = nominal_voltage(board, rail)
+    limit = check.limit or (INJECTION_UNKNOWN if nominal is None else INJECTION_OVER * nominal)
+    rated = None if rail.reservoir is None else rail.reservoir.rated_voltage
+    limit = limit if rated is None or check.limit is not None else min(limit, rated)
+    return check.clamp or INJECTION_CLAMP, limit
+
+
+def _injection(bench: Bench, board: Board, check: Check) -> Shown:
+    clamp, limit = injection_limits(board, check)
+    volts = bench.injected(check.on or (), _rail(board, check), clamp, limit)
+    solved = np.isfinite(volts)
+    value = np.where(solved, volts, limit / 2.0)
+    return Shown(value, 0.003 * value + 0.02 + np.where(solved, 0.0, limit))
+
+
 def _load_current(bench: Bench, board: Board, check: Check) -> Shown:
     """From a bench supply at 90 % of the rail's voltage, across the load itself."""
     number = _load(board, check)
@@ -293,7 +321,7 @@ def _load_current(bench: Bench, board: Board, check: Check) -> Shown:
 
 def _branch(specimens: Specimens, number: int, voltage: Array) -> Array:
     kind = specimens.shape.loads[number].kind
-    if kind == "current":
+    if kind in ("current", "gate"):
         return branches.constant_current(voltage, specimens.load_current[number])[0]
     if kind == "led":
         return branches.led(voltage, specimens.load_forward[number], specimens.load_resistance[number])[0]
@@ -343,9 +371,10 @@ SHOWS: dict[str, Shows] = {
     "reservoir-esr": _esr,
     "reservoir-leakage": _reservoir_leakage,
     "rail-leakage": _rail_leakage,
+    "rail-injection": _injection,
     "load-current": _load_current,
     "coil-resistance": _coil,
     "switch-test": _switch,
     "tap-test": _tap,
 }
-"""Readings that the physics can foretell. Not yet: rail-injection."""
+"""Readings that the physics can foretell: all but `look`."""

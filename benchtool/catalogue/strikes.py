@@ -213,8 +213,9 @@ def feed_high(specimens: Specimens, scene: Scene) -> Specimens:
 
 
 def feed_short(specimens: Specimens, scene: Scene) -> Specimens:
-    """Half an ohm."""
-    return _row(specimens, scene, "feed", known.SHORTED_JUNCTION)
+    """Half an ohm in place of the resistor, or from a regulator's input to its output."""
+    struck = _row(specimens, scene, "feed", known.SHORTED_JUNCTION)
+    return _row(_row(struck, scene, "regulated", np.inf), scene, "dropout", 0.0)
 
 
 def load_excess(specimens: Specimens, scene: Scene) -> Specimens:

@@ -24,13 +24,16 @@ from benchtool.physics.budget import (
     back_solved_capacitance,
     capacitance_giving,
     dropout_capacitance,
+    regulating,
 )
 from benchtool.physics.laws import Array, two_sigma
-from benchtool.physics.mean_value import demand_at, settle
+from benchtool.physics.mean_value import demand_at, means
 from benchtool.physics.sequence import METER, coordinate
 from benchtool.physics.specimens import Specimens, as_marked
 
 DRAWN = 256
+MOSTLY = 0.5
+"""Share of healthy boards that must regulate in a state before a reading there can say that the rail does."""
 LOW, HIGH = 2.5, 97.5
 """Percent points of a 95 % band."""
 BARELY = 2.0
@@ -97,7 +100,7 @@ class _Solver:
         self.board, self.meter = board, meter
         self.spread, _ = reading_population(board, meter, readings, DRAWN)
         self.marked = as_marked(board)
-        self.bench = Bench(self.spread)
+        self.bench = Bench(self.spread, crowd=True)
         self.smooth = not any(_rough(board, reading) for reading in readings)
 
     def figure(self, reading: Reading) -> Effective | None:
@@ -134,14 +137,17 @@ class _Solver:
         if low is None:
             return None
         held = _with(self.spread, capacitance)
-        supply = settle(held, on, warm=warm).supply_current
+        supply = means(held, on, warm=warm).supply_current
         return Effective(capacitance_low=low, current_low=_point(supply, LOW), readings=(reading,))
 
     def _on_first_rail(self, reading: Reading) -> bool:
         return reading.rail == self.board.rails[0].name
 
     def _band(self, reading: Reading) -> str:
-        """Whether the reading lies below, within or above what healthy boards of this kind show."""
+        """Whether the reading lies below, within or above what healthy boards show; below also where they do not regulate."""
+        regulates = regulating(self.bench.settled(reading.on, warm=reading.when == "warm"), 0)
+        if regulates is None or float(np.mean(regulates)) < MOSTLY:
+            return "below"
         shown = SHOWS[reading.what](self.bench, self.board, reading.check).value
         assert shown is not None
         assert isinstance(reading.value, float)
@@ -176,9 +182,9 @@ class _Solver:
         def solve(specimens: Specimens, read: Array) -> tuple[Array, Array]:
             if what == "inrush-voltage":
                 read = read / specimens.inrush
-            capacitance = capacitance_giving(specimens, on, warm, lambda settled: settled.line_current, read)
-            settled = settle(_with(specimens, capacitance), on, warm=warm)
-            return capacitance, np.where(np.isfinite(capacitance), settled.supply_current, np.nan)
+            capacitance = capacitance_giving(specimens, on, warm, lambda found: found.line_current, read)
+            found = means(_with(specimens, capacitance), on, warm=warm)
+            return capacitance, np.where(np.isfinite(capacitance), found.supply_current, np.nan)
 
         capacitance, current = solve(self.spread, self._read(reading, value))
         if _point(capacitance, LOW) is None:
@@ -192,7 +198,7 @@ class _Solver:
     def _without_dropper(self, on: tuple[str, ...], warm: bool) -> float:
         """The current that the bleeder alone would bring into the first rail of the board as marked [A]."""
         bare = replace(self.marked, capacitance=1e-6 * self.marked.capacitance)
-        return float(np.mean(settle(bare, on, warm=warm).supply_current))
+        return float(np.mean(means(bare, on, warm=warm).supply_current))
 
 
 def _with(specimens: Specimens, capacitance: Array) -> Specimens:

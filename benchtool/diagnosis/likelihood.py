@@ -77,16 +77,19 @@ def _number(shown: Shown, value: float, kind: ReadingKind, meter: Meter) -> Arra
 
 
 def log_uniform_density(reading: Reading, board: Board) -> float:
-    """Logarithm of the density of `reading` if it were a mistake: evenly over what a file accepts, words over the words."""
+    """Logarithm of the density of `reading` if it were a mistake: evenly over what a file accepts, words over the words.
+
+    Where a kind knows both numbers and words, either has half.
+    """
     kind = READING_KINDS[reading.what]
     if isinstance(reading.value, tuple):
         return float(len(LOOK_WORDS) * np.log(0.5))
+    share = float(np.log(0.5)) if kind.unit is not None and kind.words else 0.0
     if isinstance(reading.value, str):
-        return float(-np.log(len(kind.words)))
+        return float(-np.log(len(kind.words)) + share)
     low, high = accepted(kind, board)
-    if kind.unit in LOGARITHMIC:
-        return float(-np.log(np.log(high / SMALLEST[kind.unit])))
-    return float(-np.log(high - low))
+    span = np.log(high / SMALLEST[kind.unit]) if kind.unit in LOGARITHMIC else high - low
+    return float(-np.log(span) + share)
 
 
 def look_log_chance(hypothesis: Hypothesis, value: ReadingValue) -> float:

@@ -145,7 +145,7 @@ def near_parts(board: Board, meter: Meter, readings: Sequence[Reading]) -> dict[
 
 def usable(board: Board, readings: Sequence[Reading]) -> tuple[Reading, ...]:
     """The readings that weigh on the suspects, each once, in one order whatever order they were taken in."""
-    weighing = [r for r in readings if (r.what in SHOWS or r.what == "look") and r.what not in ELSEWHERE]
+    weighing = [reading for reading in readings if reading.what not in ELSEWHERE]
     in_place = {_order(board, reading): reading for reading in reversed(weighing)}
     return tuple(in_place[place] for place in sorted(in_place))
 
@@ -201,7 +201,7 @@ class _Judge:
         hypotheses = hypotheses_of(self.board)
         healthy, log_share = reading_population(self.board, self.meter, self.readings, DRAWN)
         struck = [self._strike(hypothesis, healthy, 0.0, 1.0) for hypothesis in hypotheses]
-        bench = Bench(concatenate(struck))
+        bench = Bench(concatenate(struck), crowd=True)
         densities = self._densities(bench)
         level = np.full(DRAWN, log_share - np.log(DRAWN))
         slices = [slice(start, start + DRAWN) for start in range(0, bench.specimens.count, DRAWN)]
@@ -218,7 +218,7 @@ class _Judge:
         margin = 2.0 / len(joint)
         low, high = max(float(counts.min()) - margin, 0.0), min(float(counts.max()) + margin, 1.0)
         healthy, log_share = reading_population(self.board, self.meter, self.readings, REDRAWN)
-        bench = Bench(self._strike(item.hypothesis, healthy, low, high))
+        bench = Bench(self._strike(item.hypothesis, healthy, low, high), crowd=True)
         level = np.full(REDRAWN, log_share + np.log(high - low) - np.log(REDRAWN))
         return replace(self._evidence(item.hypothesis, bench, self._densities(bench), level), wide=item)
 

@@ -4,8 +4,10 @@ from __future__ import annotations
 
 from dataclasses import fields, replace
 
+import numpy as np
+
+from benchtool.physics import mean_value, waveform
 from benchtool.physics.laws import Array
-from benchtool.physics.mean_value import settle
 from benchtool.physics.sequence import METER_WINDOW, coordinate
 from benchtool.physics.settled import Settled
 from benchtool.physics.specimens import Specimens, take
@@ -16,13 +18,17 @@ SETTLED_ARRAYS = tuple(field.name for field in fields(Settled) if field.name != 
 class Bench:
     """Holds `specimens` and remembers what they settled to in each state asked for.
 
-    A part of a bench takes its share of what the whole settled to, so that many hypotheses are solved in one pass.
+    A part of a bench takes its share of what the whole settled to, so that many hypotheses are solved in one pass. A crowd is
+    settled by its means, which is quick; what is shown as a figure, by its cycle.
     """
 
-    def __init__(self, specimens: Specimens, whole: Bench | None = None, where: slice = slice(None)) -> None:
-        self.specimens = specimens
+    def __init__(
+        self, specimens: Specimens, whole: Bench | None = None, where: slice = slice(None), *, crowd: bool = False
+    ) -> None:
+        self.specimens, self._crowd = specimens, crowd
         self._whole, self._where = whole, where
         self._settled: dict[tuple[frozenset[str], bool], Settled] = {}
+        self._injected: dict[tuple[frozenset[str], int, float, float], Array] = {}
 
     def part(self, where: slice) -> Bench:
         """Some of the specimens, as a bench of their own."""
@@ -37,10 +43,22 @@ class Bench:
 
     def _settle(self, on: tuple[str, ...], warm: bool) -> Settled:
         if self._whole is None:
+            settle = mean_value.settle if self._crowd else waveform.settle
             return settle(self.specimens, on, warm=warm)
         whole = self._whole.settled(on, warm=warm)
         arrays = {name: getattr(whole, name)[..., self._where] for name in SETTLED_ARRAYS}
         return replace(whole, specimens=self.specimens, **arrays)
+
+    def injected(self, on: tuple[str, ...], rail: int, clamp: float, limit: float) -> Array:
+        """Volts [V] on `rail` fed by a bench supply of `clamp` [A] and `limit` [V], unplugged; (n,), NaN where not solved."""
+        key = (frozenset(on), rail, clamp, limit)
+        if key not in self._injected:
+            if self._whole is None:
+                volts, solved = mean_value.injected(self.specimens, on, rail, clamp, limit)
+                self._injected[key] = np.where(solved, volts, np.nan)
+            else:
+                self._injected[key] = self._whole.injected(on, rail, clamp, limit)[self._where]
+        return self._injected[key]
 
     def chance(self) -> Array:
         """A coordinate evenly over 0 to 1 for what depends on the meter and not on the specimen, (n,)."""

@@ -11,9 +11,9 @@ from benchtool.board import Board, nominal_voltage
 from benchtool.physics import constants as known
 from benchtool.physics import laws
 from benchtool.physics.laws import Array, Flags
-from benchtool.physics.mean_value import settle
+from benchtool.physics.mean_value import Means, mean_pulses, means
 from benchtool.physics.settled import Settled
-from benchtool.physics.shape import TO_COMMON
+from benchtool.physics.shape import TO_COMMON, Shape
 from benchtool.physics.specimens import Specimens, as_marked
 from benchtool.physics.supply import feed_of, half_swing, supply_current
 
@@ -127,6 +127,8 @@ def _needs(specimens: Specimens, rails: Array, index: int) -> Array:
             continue
         if rail.fed_through == "zener":
             need = need + np.maximum(_needs(specimens, rails, child), 0.0)
+        elif rail.fed_through == "regulator":
+            need = need + _needs(specimens, rails, child) + specimens.ground_current[child]
         else:
             need = need + (rails[index] - rails[child]) / specimens.feed[child]
     return need
@@ -136,6 +138,8 @@ def _marked_draw(specimens: Specimens, number: int, voltage: Array) -> Array:
     kind = specimens.shape.loads[number].kind
     if kind == "current":
         return np.asarray(specimens.load_current[number])
+    if kind == "gate":
+        return np.asarray(specimens.load_current[number] * mean_pulses(specimens)[number])
     over = specimens.load_forward[number] if kind == "led" else 0.0
     return np.asarray(np.maximum(voltage - over, 0.0) / specimens.load_resistance[number])
 
@@ -146,7 +150,7 @@ def normal_load(board: Board) -> float:
     return 0.01 if figure is None or figure <= 0.0 else figure
 
 
-Shows = Callable[[Settled], Array]
+Shows = Callable[[Means], Array]
 BISECTIONS = 22
 """Halvings of the search for a dropper: five figures of it."""
 
@@ -163,7 +167,7 @@ def capacitance_giving(specimens: Specimens, on: tuple[str, ...], warm: bool, sh
     low, high = lowest, highest
     for _ in range(BISECTIONS):
         middle = 0.5 * (low + high)
-        reached = shows(settle(replace(cold, capacitance=np.exp(middle)), on, warm=warm)) >= target
+        reached = shows(means(replace(cold, capacitance=np.exp(middle)), on, warm=warm)) >= target
         low, high = np.where(reached, low, middle), np.where(reached, middle, high)
     found = np.where(low > lowest, np.exp(0.5 * (low + high)), 0.0)
     return np.where(high < highest, found, np.nan)
@@ -172,16 +176,15 @@ def capacitance_giving(specimens: Specimens, on: tuple[str, ...], warm: bool, sh
 def dropout_capacitance(specimens: Specimens, on: tuple[str, ...], *, warm: bool = False) -> Array:
     """The dropper [F] at which the first rail leaves regulation, (n,): a zener between it and common falls to 0.1 mA."""
     target = np.full(specimens.count, known.REGULATES_FROM)
-    return capacitance_giving(specimens, on, warm, lambda settled: chain_current(settled, 0), target)
+    return capacitance_giving(specimens, on, warm, lambda found: chain_current(found.zener_current, specimens.shape, 0), target)
 
 
-def chain_current(settled: Settled, index: int) -> Array:
-    """The least mean current [A] among the zeners that hold rail `index` over common, (n,)."""
-    rails = settled.specimens.shape.rails
-    least: Array = settled.zener_current[index]
-    while rails[index].clamps_to != TO_COMMON:
-        index = rails[index].clamps_to
-        least = np.asarray(np.minimum(least, settled.zener_current[index]))
+def chain_current(zener_current: Array, shape: Shape, index: int) -> Array:
+    """The least of the mean currents [A] (rails, n) through the zeners that hold rail `index` over common, (n,)."""
+    least: Array = zener_current[index]
+    while shape.rails[index].clamps_to != TO_COMMON:
+        index = shape.rails[index].clamps_to
+        least = np.asarray(np.minimum(least, zener_current[index]))
     return least
 
 
@@ -195,13 +198,19 @@ def back_solved_capacitance(specimens: Specimens, current: Array, first_rail: Ar
     """The dropper [F] that delivers the mean `current` [A] into the first rail at `first_rail` [V], (n,)."""
     feed = feed_of(specimens)
     full = current / np.where(feed.share > 0.0, feed.share, np.nan)
-    return laws.capacitance_for(
-        full, specimens.crest, specimens.frequency, feed.series, half_swing(specimens, first_rail)
-    )
+    found = laws.capacitance_for(full, feed.crest, specimens.frequency, feed.series, half_swing(specimens, first_rail))
+    return np.asarray(np.where(specimens.shunt > 0.0, np.nan, found))
 
 
 def regulating(settled: Settled, index: int) -> Flags | None:
-    """Whether rail `index` regulates: every zener between it and common carries 0.1 mA; None without one. Bool (n,)."""
-    if not settled.specimens.shape.rails[index].has_zener:
+    """Whether rail `index` regulates: every zener between it and common carries 0.1 mA, or a regulator's input stands above its
+    dropout; None for a rail with neither. Bool (n,).
+    """
+    specimens = settled.specimens
+    rail = specimens.shape.rails[index]
+    if rail.fed_through == "regulator":
+        room = settled.rail_voltage[rail.parent] - specimens.dropout[index]
+        return np.asarray(room >= specimens.regulated[index])
+    if not rail.has_zener:
         return None
-    return np.asarray(chain_current(settled, index) >= known.REGULATES_FROM)
+    return np.asarray(chain_current(settled.zener_current, specimens.shape, index) >= known.REGULATES_FROM)

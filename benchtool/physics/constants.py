@@ -36,6 +36,10 @@ ESR_HEALTHY = (1.5e-5, 2e-4)
 """Healthy spread of ESR times capacitance [ohm·F]."""
 ESR_LEAST = 0.02
 """Least ESR of a reservoir [ohm]."""
+REGULATOR_RESISTANCE = 0.2
+"""Output resistance of a regulator [ohm]."""
+REGULATOR_DROPOUT = 0.3
+"""Dropout of a regulator where none is stated [V]; value from memory: small parts drop 0.2 to 0.5 V at a few milliamperes."""
 SHORTED_JUNCTION = 0.5
 """A shorted diode's, or a shorted film capacitor's, resistance [ohm]."""
 

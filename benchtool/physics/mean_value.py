@@ -1,7 +1,8 @@
 """The settled state by mean values: Kirchhoff's current law at every rail, solved by Newton's method for all specimens at once.
 
-Right while the rails are smooth; a waveform solver can take its place behind the same `settle`. Where the rail is not smooth
-the mean is corrected for the reservoir's sag by an estimate, and the ripple is such an estimate too (`ripple.py`).
+Right while the rails are smooth, and quick: the crowds that a diagnosis compares with readings are settled by it. Where a rail is
+not smooth its mean is corrected for the reservoir's sag by an estimate, and the ripple is such an estimate too (`ripple.py`). The
+settled cycle (`waveform.py`), which knows both, starts from here and hands back the same `Settled`.
 """
 
 from __future__ import annotations
@@ -10,138 +11,186 @@ from collections.abc import Callable
 from dataclasses import dataclass, replace
 
 import numpy as np
-from numpy.typing import NDArray
 
 from benchtool.physics import branches, laws
 from benchtool.physics import constants as known
-from benchtool.physics.laws import Array
+from benchtool.physics.branches import Branch
+from benchtool.physics.laws import Array, Flags
+from benchtool.physics.network import (
+    Balance,
+    Network,
+    across,
+    add_loads,
+    add_rails,
+    load_branch,
+    network_of,
+    rail_zener,
+)
 from benchtool.physics.ripple import ripple_estimate, sagged
 from benchtool.physics.settled import Settled
 from benchtool.physics.shape import TO_COMMON
-from benchtool.physics.specimens import Specimens, Switch, take
+from benchtool.physics.specimens import Specimens
 from benchtool.physics.supply import feed_of, mains_side, supply_current
 
 MOST_STEPS = 80
+CUTS = 7
 MUCH_WORSE = 10.0
 """Steep laws overshoot by orders of magnitude; a little worse on the way round a bend is none of that."""
 STEPS_TOGETHER = 3
-CUTS = 7
 BALANCED = 1e-8
 """A specimen is solved when every rail's currents add up to less than this [A],"""
 STANDS = 1e-7
 """or when no rail moves by more than this any more [V]: a rail may sit on a kink, as at the crest."""
 WARMING_STEPS = 4
-COIL_WARM_KELVIN = 60.0
-"""What 15 minutes on do to a coil inside a warm appliance: kelvin above the bench; value from memory."""
+RMS_OF_TRIANGLE = float(np.sqrt(12.0))
+"""Peak to peak over RMS of a triangle, the form of ripple that is estimated."""
+STIFF = 1e3
+"""Conductance that holds a rail at a given voltage [S]."""
 
-
-class Balance:
-    """Currents into every rail and their slopes, added up branch by branch; arrays (rails, n) and (n, rails, rails)."""
-
-    def __init__(self, rails: int, count: int) -> None:
-        self.surplus = np.zeros((rails, count))
-        self.slopes = np.zeros((count, rails, rails))
-
-    def inject(self, rail: int, current: Array, slope: Array) -> None:
-        """A source's `current` [A] into `rail`, with its slope against that rail's voltage [S], each (n,)."""
-        self.surplus[rail] += current
-        self.slopes[:, rail, rail] += slope
-
-    def branch(self, start: int, end: int, branch: branches.Branch) -> None:
-        """A branch's current [A] and slope [S], each (n,), from rail `start` to rail `end` or common."""
-        current, slope = branch
-        self.inject(start, -current, -slope)
-        if end != TO_COMMON:
-            self.inject(end, current, -slope)
-            self.slopes[:, start, end] += slope
-            self.slopes[:, end, start] += slope
+Source = Callable[[Specimens, Balance, Array], None]
+"""Adds what feeds the network to a balance: the mains through the rectifier, a fixed rail, a bench supply."""
 
 
 @dataclass(frozen=True, slots=True)
-class Network:
-    """Specimens in one switched state: `drawing` (loads, n) is true where a load is really connected."""
+class Means:
+    """The network with its zeners as warm as they leave themselves, its rails (rails, n) [V], and which are solved (n,)."""
 
-    specimens: Specimens
-    drawing: Array
-    load_resistance: Array
+    network: Network
+    rails: Array
+    solved: Flags
 
+    @property
+    def zener_current(self) -> Array:
+        """Mean reverse current of every rail's zener [A], what a short carries left out; (rails, n)."""
+        return _zeners(self.network.specimens, self.rails)[0]
 
-def network_of(specimens: Specimens, on: tuple[str, ...], warm: bool) -> Network:
-    """The network with the switched loads `on` commanded on; `warm` heats the coils."""
-    commanded = np.array(specimens.shape.commanded(on), dtype=bool)[:, None]
-    drawing = (commanded & (specimens.switch != Switch.OPEN)) | (specimens.switch == Switch.STUCK)
-    ratio = float(laws.copper_ratio(25.0 + COIL_WARM_KELVIN)) if warm else 1.0
-    coils = np.array([load.kind == "coil" for load in specimens.shape.loads], dtype=bool)[:, None]
-    return Network(specimens, drawing & (specimens.load_open == 0.0), specimens.load_resistance * np.where(coils, ratio, 1.0))
+    @property
+    def line_current(self) -> Array:
+        """Current in the mains lead [A RMS], (n,)."""
+        return mains_side(feed_of(self.network.specimens), self.rails[0]).line_current
 
-
-def across(rails: Array, start: int, end: int) -> Array:
-    """Voltage [V] between two of the `rails` (rails, n) [V], or a rail and common; (n,)."""
-    return rails[start] if end == TO_COMMON else np.asarray(rails[start] - rails[end])
-
-
-def load_branch(network: Network, index: int, voltage: Array) -> branches.Branch:
-    """What load `index` draws at `voltage` [V] across it."""
-    specimens, kind = network.specimens, network.specimens.shape.loads[index].kind
-    resistance = network.load_resistance[index]
-    if kind == "current":
-        current, slope = branches.constant_current(voltage, specimens.load_current[index])
-    elif kind == "led":
-        current, slope = branches.led(voltage, specimens.load_forward[index], resistance)
-    else:
-        current, slope = branches.resistor(voltage, resistance)
-    drawn = network.drawing[index]
-    excess = specimens.load_excess[index]
-    return np.where(drawn, current + voltage * excess, 0.0), np.where(drawn, slope + excess, 0.0)
+    @property
+    def supply_current(self) -> Array:
+        """Mean current out of the rectifier into the first rail [A], (n,)."""
+        current, _ = supply_current(feed_of(self.network.specimens), self.rails[0])
+        at_node = self.network.specimens.shape.zener_at_node
+        return current - self.zener_current[0] if at_node else current
 
 
-def zener_branch(specimens: Specimens, index: int, rails: Array) -> branches.Branch:
-    """Mean current [A] through the zener of rail `index` and its slope [S], with the rails at `rails` (rails, n) [V].
+def means(specimens: Specimens, on: tuple[str, ...], *, warm: bool = False) -> Means:
+    """The settled means with the switched loads `on` commanded on; `warm` after 15 minutes on."""
+    network = network_of(specimens, on, warm)
+    rails, solved = _solve(network, _mains, _start(specimens))
+    for _ in range(WARMING_STEPS if np.any(specimens.zener_kelvin_per_watt) else 0):
+        network = replace(network, specimens=_warmed(specimens, _zeners(network.specimens, rails)[1]))
+        rails, solved = _solve(network, _mains, rails)
+    return Means(network, rails, solved)
+
+
+def settle(specimens: Specimens, on: tuple[str, ...], *, warm: bool = False) -> Settled:
+    """The settled state by its means, ripple and sag estimated, with the switched loads `on` commanded on."""
+    found = means(specimens, on, warm=warm)
+    network, rails = found.network, found.rails
+    hot, shape = network.specimens, specimens.shape
+    feed = feed_of(specimens)
+    supply, _ = supply_current(feed, rails[0])
+    zener_current, zener_power = _zeners(hot, rails)
+    if shape.zener_at_node:
+        zener_power[0] += supply * known.DIODE_DROP
+    voltages = np.array([across(rails, load.rail, load.returns_to) for load in shape.loads])
+    voltages = voltages.reshape(len(shape.loads), specimens.count)
+    pulsed = mean_pulses(specimens)
+    currents = [load_branch(network, index, voltages[index], pulsed[index])[0] for index in range(len(shape.loads))]
+    side = mains_side(feed, rails[0])
+    ripple = ripple_estimate(hot, rails, supply, zener_current)
+    rectified = supply * (rails[0] + 2.0 * known.DIODE_DROP)
+    series = np.where(np.isfinite(specimens.series_resistance), specimens.series_resistance, 0.0)
+    over = (side.dropper_voltage**2 + side.dropper_dc**2) / specimens.parallel_resistance
+    return Settled(
+        specimens=specimens,
+        rail_voltage=sagged(rails, ripple, zener_current),
+        ripple_pp=ripple,
+        ripple_rms=ripple / RMS_OF_TRIANGLE,
+        zener_current=zener_current,
+        zener_power=zener_power,
+        supply_current=supply - zener_current[0] if shape.zener_at_node else supply,
+        line_current=side.line_current,
+        real_power=rectified + side.line_current**2 * series + over,
+        dropper_voltage=side.dropper_voltage,
+        dropper_dc=side.dropper_dc,
+        load_voltage=voltages,
+        load_current=np.array(currents).reshape(len(shape.loads), specimens.count),
+        converged=found.solved,
+    )
+
+
+def mean_zener(specimens: Specimens, index: int, rails: Array) -> Branch:
+    """Mean current [A] through the zener of rail `index` and its slope [S], the rails at `rails` (rails, n) [V].
 
     At the dropper node it stands a diode higher and conducts half the time.
     """
-    rail = specimens.shape.rails[index]
-    voltage = across(rails, index, rail.clamps_to)
-    marked, short = specimens.zener[index], specimens.zener_short[index]
-    if index == 0 and specimens.shape.zener_at_node:
-        current, slope = branches.junction(voltage + known.DIODE_DROP, marked, known.ZENER_CURRENT, known.ZENER_SLOPE)
-        return 0.5 * current, 0.5 * slope
-    return branches.zener(voltage, marked, short)
+    if index > 0 or not specimens.shape.zener_at_node:
+        return rail_zener(specimens, index, rails)
+    node = rails[0] + known.DIODE_DROP
+    current, slope = branches.junction(node, specimens.zener[0], known.ZENER_CURRENT, known.ZENER_SLOPE)
+    return 0.5 * current, 0.5 * slope
 
 
-def _add_network(balance: Balance, network: Network, rails: Array) -> None:
-    specimens = network.specimens
+def balance_at(network: Network, rails: Array, pulsed: tuple[float, ...]) -> Balance:
+    """Everything but the source, at `rails` (rails, n) [V]; `pulsed` as in `add_loads`."""
+    balance, specimens = Balance(len(rails)), network.specimens
     for index, rail in enumerate(specimens.shape.rails):
-        balance.branch(index, rail.clamps_to, zener_branch(specimens, index, rails))
-        leak = 1.0 / specimens.reservoir_leak[index] + 1.0 / specimens.board_leak[index] + 1.0 / known.METER_RESISTANCE
-        balance.inject(index, -rails[index] * leak, -leak)
-        if rail.fed_through == "resistor":
-            through = specimens.feed[index] + specimens.rail_joint[index]
-            balance.branch(rail.parent, index, branches.resistor(across(rails, rail.parent, index), through))
-    for index, load in enumerate(specimens.shape.loads):
-        voltage = across(rails, load.rail, load.returns_to)
-        balance.branch(load.rail, load.returns_to, load_branch(network, index, voltage))
+        balance.branch(index, rail.clamps_to, mean_zener(specimens, index, rails))
+    add_rails(balance, network, rails)
+    add_loads(balance, network, rails, pulsed)
+    return balance
 
 
-Evaluate = Callable[[Array], Balance]
+def mean_pulses(specimens: Specimens) -> tuple[float, ...]:
+    """For each load, the share of a cycle that its gate pulses flow, two of them a cycle."""
+    return tuple(min(2.0 * specimens.frequency * load.pulse, 1.0) for load in specimens.shape.loads)
 
 
-def _newton(evaluate: Evaluate, start: Array, steps: int) -> tuple[Array, Array]:
-    """Rails (rails, n) at which every rail's surplus is nil, and which specimens got there within `steps` (n,).
+def _mains(specimens: Specimens, balance: Balance, rails: Array) -> None:
+    balance.inject(0, *supply_current(feed_of(specimens), rails[0]))
+
+
+def _solve(
+    network: Network, source: Source, start: Array, pulsed: tuple[float, ...] | None = None
+) -> tuple[Array, Flags]:
+    """Newton's method on all specimens; after every few steps only those not yet balanced go on."""
+    rails, solved = start.copy(), np.zeros(network.specimens.count, dtype=bool)
+    pulses = mean_pulses(network.specimens) if pulsed is None else pulsed
+    for _ in range(MOST_STEPS // STEPS_TOGETHER):
+        rest = np.flatnonzero(~solved)
+        if not rest.size:
+            break
+        part = network if rest.size == solved.size else network.part(rest)
+
+        def evaluate(trial: Array, part: Network = part) -> Balance:
+            balance = balance_at(part, trial, pulses)
+            source(part.specimens, balance, trial)
+            return balance
+
+        rails[:, rest], solved[rest] = _newton(evaluate, rails[:, rest])
+    return rails, solved
+
+
+def _newton(evaluate: Callable[[Array], Balance], start: Array) -> tuple[Array, Flags]:
+    """Rails (rails, n) at which every rail's surplus is nil, and which specimens got there within a few steps (n,).
 
     Where a full step makes the surplus much worse it is cut to a quarter for that specimen: the laws are steep, but monotone.
     """
     rails, balance = start, evaluate(start)
-    error = np.abs(balance.surplus).max(axis=0)
+    error = np.abs(np.array(balance.surplus)).max(axis=0)
     moved = np.full_like(error, np.inf)
-    for _ in range(steps):
+    for _ in range(STEPS_TOGETHER):
         if np.all((error <= BALANCED) | (moved <= STANDS)):
             break
-        step = np.linalg.solve(balance.slopes, -balance.surplus.T[..., None])[..., 0].T
-        step = np.maximum(step, -rails)  # nothing here pulls a rail under common
+        step = np.maximum(balance.step(), -rails)  # nothing here pulls a rail under common
         for _ in range(CUTS):
             trial = evaluate(rails + step)
-            trial_error = np.abs(trial.surplus).max(axis=0)
+            trial_error = np.abs(np.array(trial.surplus)).max(axis=0)
             worse = (trial_error > MUCH_WORSE * error) & (trial_error > BALANCED)
             if not worse.any():
                 break
@@ -151,50 +200,16 @@ def _newton(evaluate: Evaluate, start: Array, steps: int) -> tuple[Array, Array]
     return rails, (error <= BALANCED) | (moved <= STANDS)
 
 
-Source = Callable[[Specimens, Balance, Array], None]
-"""Adds what feeds the network to a balance: the mains through the rectifier, or a fixed rail."""
-
-
-def _solve(network: Network, source: Source, start: Array) -> tuple[Array, Array]:
-    """Newton's method on all specimens; after every few steps only those not yet balanced go on."""
-    rails, solved = start.copy(), np.zeros(network.specimens.count, dtype=bool)
-    for _ in range(MOST_STEPS // STEPS_TOGETHER):
-        rest = np.flatnonzero(~solved)
-        if not rest.size:
-            break
-        part = _part(network, rest)
-
-        def evaluate(trial: Array, part: Network = part) -> Balance:
-            balance = Balance(len(trial), part.specimens.count)
-            source(part.specimens, balance, trial)
-            _add_network(balance, part, trial)
-            return balance
-
-        rails[:, rest], solved[rest] = _newton(evaluate, rails[:, rest], STEPS_TOGETHER)
-    return rails, solved
-
-
-def _part(network: Network, index: NDArray[np.intp]) -> Network:
-    if len(index) == network.specimens.count:
-        return network
-    return Network(take(network.specimens, index), network.drawing[:, index], network.load_resistance[:, index])
-
-
-def _mains(specimens: Specimens, balance: Balance, rails: Array) -> None:
-    balance.inject(0, *supply_current(feed_of(specimens), rails[0]))
-
-
 def _start(specimens: Specimens) -> Array:
-    """A first guess: zeners a little over their mark, rails without one at half the crest."""
+    """A first guess: zeners a little over their mark, a regulator at its voltage, other rails at half the crest."""
     rails = np.empty_like(specimens.zener)
     for index, rail in reversed(list(enumerate(specimens.shape.rails))):
         foot = 0.0 if rail.clamps_to == TO_COMMON else rails[rail.clamps_to]
-        rails[index] = np.where(np.isfinite(specimens.zener[index]), specimens.zener[index] + 0.1 + foot, specimens.crest / 2.0)
+        other = specimens.regulated[index] if rail.fed_through == "regulator" else specimens.crest / 2.0
+        zener = specimens.zener[index]
+        other = np.where(np.isfinite(other), other, specimens.crest / 2.0)
+        rails[index] = np.where(np.isfinite(zener), zener + 0.1 + foot, other)
     return rails
-
-
-STIFF = 1e3
-"""Conductance that holds a rail at a given voltage [S]."""
 
 
 def demand_at(specimens: Specimens, on: tuple[str, ...], warm: bool, first_rail: Array) -> Array:
@@ -210,15 +225,28 @@ def demand_at(specimens: Specimens, on: tuple[str, ...], warm: bool, first_rail:
     return np.where(solved, STIFF * (first_rail - rails[0]), np.nan)
 
 
-def settle(specimens: Specimens, on: tuple[str, ...], *, warm: bool = False) -> Settled:
-    """The settled state of every specimen with the switched loads `on` commanded on; `warm` after 15 minutes on."""
-    network = network_of(specimens, on, warm)
-    rails, converged = _solve(network, _mains, _start(specimens))
-    for _ in range(WARMING_STEPS if np.any(specimens.zener_kelvin_per_watt) else 0):
-        _, power = _zeners(network.specimens, rails)
-        network = replace(network, specimens=_warmed(specimens, power))
-        rails, converged = _solve(network, _mains, rails)
-    return _settled(network, specimens, rails, converged)
+def injected(specimens: Specimens, on: tuple[str, ...], rail: int, clamp: float, limit: float) -> tuple[Array, Flags]:
+    """Volts [V] on `rail` fed by a bench supply of current limit `clamp` [A] and voltage limit `limit` [V], the board unplugged.
+
+    (n,), with the flags of what is solved. Zeners stay cold, and gates rest, as there are no mains to fire them by; at the
+    dropper node the series diode keeps current from the zener.
+    """
+
+    def source(part: Specimens, balance: Balance, rails: Array) -> None:
+        wanted = STIFF * (limit - rails[rail])
+        limited = wanted > clamp
+        balance.inject(rail, np.where(limited, clamp, wanted), np.where(limited, 0.0, -STIFF))
+
+    bare = specimens
+    if specimens.shape.zener_at_node:
+        zener, short = specimens.zener.copy(), specimens.zener_short.copy()
+        zener[0], short[0] = np.inf, np.inf
+        bare = replace(specimens, zener=zener, zener_short=short)
+    start = np.zeros_like(bare.zener)
+    start[rail] = limit
+    resting = (0.0,) * len(bare.shape.loads)
+    rails, solved = _solve(network_of(bare, on, warm=False), source, start, resting)
+    return rails[rail], solved
 
 
 def _warmed(specimens: Specimens, power: Array) -> Specimens:
@@ -233,37 +261,9 @@ def _zeners(specimens: Specimens, rails: Array) -> tuple[Array, Array]:
     current, power = np.zeros_like(rails), np.zeros_like(rails)
     for index, rail in enumerate(specimens.shape.rails):
         voltage = across(rails, index, rail.clamps_to)
-        through, _ = zener_branch(specimens, index, rails)
+        through, _ = mean_zener(specimens, index, rails)
         at_node = index == 0 and specimens.shape.zener_at_node
         shorted = 0.0 if at_node else voltage / specimens.zener_short[index]
         current[index] = np.maximum(through - shorted, 0.0)
         power[index] = np.abs(through * (voltage + (known.DIODE_DROP if at_node else 0.0)))
     return current, power
-
-
-def _settled(network: Network, cold: Specimens, rails: Array, converged: Array) -> Settled:
-    specimens, shape = network.specimens, network.specimens.shape
-    feed = feed_of(cold)
-    supply, _ = supply_current(feed, rails[0])
-    zener_current, zener_power = _zeners(specimens, rails)
-    if shape.zener_at_node:
-        zener_power[0] += supply * known.DIODE_DROP
-    voltages = np.array([across(rails, load.rail, load.returns_to) for load in shape.loads])
-    voltages = voltages.reshape(len(shape.loads), specimens.count)
-    currents = [load_branch(network, index, voltages[index])[0] for index in range(len(shape.loads))]
-    side = mains_side(feed, rails[0])
-    ripple = ripple_estimate(specimens, rails, supply, zener_current)
-    return Settled(
-        specimens=cold,
-        rail_voltage=sagged(specimens, rails, ripple, zener_current),
-        ripple_pp=ripple,
-        zener_current=zener_current,
-        zener_power=zener_power,
-        supply_current=supply - zener_current[0] if shape.zener_at_node else supply,
-        line_current=side.line_current,
-        dropper_voltage=side.dropper_voltage,
-        dropper_dc=side.dropper_dc,
-        load_voltage=voltages,
-        load_current=np.array(currents).reshape(len(shape.loads), specimens.count),
-        converged=converged,
-    )

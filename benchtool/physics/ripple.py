@@ -1,7 +1,8 @@
 """Ripple by charge: how far a reservoir falls while the rectifier rests. An estimate, within about a third.
 
 Two parts add up. The loads draw the reservoir down while the supply gives less than they take; and a conducting zener goes on
-discharging it along its exponential law. A waveform solver gives the figure itself; until then it is shown as a range.
+discharging it along its exponential law. The settled cycle gives the figure
+itself; this one serves where crowds of specimens are compared with a reading.
 """
 
 from __future__ import annotations
@@ -64,7 +65,7 @@ def _stacked_zeners(specimens: Specimens, index: int) -> float:
     return count
 
 
-def sagged(specimens: Specimens, rails: Array, ripple: Array, zener_current: Array) -> Array:
+def sagged(rails: Array, ripple: Array, zener_current: Array) -> Array:
     """Mean rail voltages [V] once a zener clips the crests of a rail that is not smooth: half the ripple under the crest."""
     share = ripple / np.maximum(np.abs(rails), 1e-9)
     clipped = (share > SMOOTH) & (zener_current > known.REGULATES_FROM)

@@ -1,4 +1,7 @@
-"""A board's shape: what is connected to what, by index, without any value. Every specimen of a board shares it."""
+"""A board's shape: what is connected to what, by index. Every specimen of a board shares it.
+
+The one value in it is the length of a gate pulse, which no tolerance touches.
+"""
 
 from __future__ import annotations
 
@@ -22,18 +25,19 @@ class RailShape:
 
 @dataclass(frozen=True, slots=True)
 class LoadShape:
-    """One load between the rails `rail` and `returns_to`."""
+    """One load between the rails `rail` and `returns_to`; `pulse` is the length of a gate pulse [s]."""
 
     name: str
     kind: str
     rail: int
     returns_to: int
     switched: bool
+    pulse: float
 
 
 @dataclass(frozen=True, slots=True)
 class Shape:
-    """The circuit without values."""
+    """The circuit."""
 
     rectifier: str
     dropper: str
@@ -62,7 +66,7 @@ def shape_of(board: Board) -> Shape:
         return RailShape(parent, rail.fed_through, rail.zener is not None, foot)
 
     def load_shape(load: Load) -> LoadShape:
-        return LoadShape(load.name, load.kind, node(load.rail), node(load.returns_to), load.switched)
+        return LoadShape(load.name, load.kind, node(load.rail), node(load.returns_to), load.switched, load.pulse or 0.0)
 
     return Shape(
         rectifier=board.rectifier,
@@ -70,16 +74,3 @@ def shape_of(board: Board) -> Shape:
         rails=tuple(rail_shape(index, rail) for index, rail in enumerate(board.rails)),
         loads=tuple(load_shape(load) for load in board.loads),
     )
-
-
-NOT_YET = {
-    "divider": "a divided dropper",
-    "regulator": "a rail fed through a regulator",
-    "gate": "a triac gate load",
-}
-
-
-def not_computed(shape: Shape) -> tuple[str, ...]:
-    """What of this shape the mean-value physics cannot compute yet, in words; empty where it can."""
-    kinds = [shape.dropper, *(rail.fed_through for rail in shape.rails), *(load.kind for load in shape.loads)]
-    return tuple(words for kind, words in NOT_YET.items() if kind in kinds)

@@ -67,6 +67,9 @@ class Specimens:
     reservoir_leak: Array
     board_leak: Array
     feed: Array
+    regulated: Array
+    dropout: Array
+    ground_current: Array
     load_resistance: Array
     load_current: Array
     load_forward: Array
@@ -236,8 +239,13 @@ def _mains_side(board: Board, draw: _Drawer) -> dict[str, Array]:
     }
 
 
+RAIL_ROWS = (
+    "zener", "zener_kelvin_per_watt", "reservoir", "esr", "feed", "regulated", "dropout", "ground_current",
+)
+
+
 def _rails(board: Board, draw: _Drawer, warm: bool) -> dict[str, Array]:
-    rows: dict[str, list[Array]] = {name: [] for name in ("zener", "zener_kelvin_per_watt", "reservoir", "esr", "feed")}
+    rows: dict[str, list[Array]] = {name: [] for name in RAIL_ROWS}
     for rail in board.rails:
         rows["zener"].append(_zener(rail, draw))
         rows["zener_kelvin_per_watt"].append(draw.even(*known.ZENER_KELVIN_PER_WATT) if warm else draw.constant(0.0))
@@ -245,6 +253,9 @@ def _rails(board: Board, draw: _Drawer, warm: bool) -> dict[str, Array]:
         rows["reservoir"].append(capacitance)
         rows["esr"].append(_esr(capacitance, draw, warm))
         rows["feed"].append(_feed(rail, draw))
+        rows["regulated"].append(draw.constant(np.inf if rail.regulated_voltage is None else rail.regulated_voltage))
+        rows["dropout"].append(draw.constant(known.REGULATOR_DROPOUT if rail.dropout is None else rail.dropout))
+        rows["ground_current"].append(draw.constant(rail.ground_current or 0.0))
     arrays = {name: np.array(values) for name, values in rows.items()}
     nothing = np.full((len(board.rails), draw.count), np.inf)
     return {**arrays, "zener_short": nothing, "reservoir_leak": nothing, "board_leak": nothing}
@@ -272,6 +283,8 @@ def _esr(capacitance: Array, draw: _Drawer, warm: bool) -> Array:
 
 
 def _feed(rail: Rail, draw: _Drawer) -> Array:
+    if rail.fed_through == "regulator":
+        return draw.constant(known.REGULATOR_RESISTANCE)
     if rail.feed_resistance is None:
         return draw.constant(np.inf)
     tolerance = _or(rail.feed_tolerance, known.RESISTOR_TOLERANCE)

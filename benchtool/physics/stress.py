@@ -27,15 +27,12 @@ class MainsPower:
 
 
 def mains_power(settled: Settled) -> MainsPower:
-    """Powers on the mains side; the real power is the sum of what every part turns into heat or hands to the first rail."""
+    """Powers on the mains side; the dropper's dielectric loss, which the cycle leaves out, is added to the real power."""
     specimens = settled.specimens
     current = settled.line_current
     inrush = np.where(np.isfinite(specimens.inrush), specimens.inrush, 0.0)
-    series = np.where(np.isfinite(specimens.series_resistance), specimens.series_resistance, 0.0)
-    across = settled.dropper_voltage**2 + settled.dropper_dc**2
     loss = 2.0 * np.pi * specimens.frequency * specimens.capacitance * known.DROPPER_LOSS_TANGENT
-    rectified = settled.rectified_current * (settled.rail_voltage[0] + 2.0 * known.DIODE_DROP)
-    real = rectified + current**2 * series + across / specimens.parallel_resistance + loss * settled.dropper_voltage**2
+    real = settled.real_power + loss * settled.dropper_voltage**2
     apparent = specimens.mains * current
     factor = real / np.maximum(apparent, 1e-12)
     return MainsPower(current * inrush, current**2 * inrush, apparent, real, np.minimum(factor, 1.0))

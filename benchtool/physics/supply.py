@@ -21,9 +21,14 @@ STEP = 1e-3
 
 @dataclass(frozen=True, slots=True)
 class Feed:
-    """What reaches the rectifier, independent of the rail: kept once per solution. Arrays (n,); `share`: of full-wave current."""
+    """What reaches the rectifier, independent of the rail: kept once per solution. Arrays (n,); `share`: of full-wave current.
+
+    `crest` [V], `capacitance` [F] and `series` [ohm] are those of a divider's equivalent where the dropper is one.
+    """
 
     specimens: Specimens
+    crest: Array
+    capacitance: Array
     series: Array
     parallel: Array
     connected: Flags
@@ -35,9 +40,14 @@ def feed_of(specimens: Specimens) -> Feed:
     """The mains side of `specimens`."""
     series = specimens.series_resistance
     connected = np.isfinite(series) & np.isfinite(specimens.rail_joint[0])
+    both = specimens.capacitance + specimens.shunt
+    divides = np.where(specimens.shunt > 0.0, specimens.capacitance / np.maximum(both, 1e-18), 1.0)
+    shorted = np.isfinite(specimens.shunt_short)
     return Feed(
         specimens=specimens,
-        series=np.where(connected, series, 1.0),
+        crest=np.where(shorted, 0.0, specimens.crest * divides),
+        capacitance=both,
+        series=np.where(connected, series, 1.0) * divides**2,
         parallel=specimens.parallel_resistance,
         connected=connected,
         share=_share(specimens),
@@ -91,11 +101,11 @@ def _current(feed: Feed, rail: Array) -> Array:
     specimens = feed.specimens
     swing, threshold = half_swing(specimens, rail), _threshold(specimens, rail)
     capacitive = laws.capacitor_current(
-        specimens.crest, specimens.frequency, specimens.capacitance, feed.series, np.maximum(swing, 0.0)
+        feed.crest, specimens.frequency, feed.capacitance, feed.series, np.maximum(swing, 0.0)
     )
     resistance = feed.parallel + feed.series
-    resistive = laws.resistor_current(specimens.crest, resistance, np.maximum(threshold, 0.0))
-    blocked = np.maximum(specimens.crest - threshold, 0.0) / resistance
+    resistive = laws.resistor_current(feed.crest, resistance, np.maximum(threshold, 0.0))
+    blocked = np.maximum(feed.crest - threshold, 0.0) / resistance
     alternating = feed.share * np.hypot(capacitive, resistive)
     return np.where(feed.connected, np.where(feed.blocked_by_dc, blocked, alternating), 0.0)
 
@@ -113,12 +123,12 @@ def mains_side(feed: Feed, rail: Array) -> MainsSide:
     """Line current and dropper voltages with the first rail at `rail` [V]."""
     specimens = feed.specimens
     swing = np.maximum(half_swing(specimens, rail), 0.0)
-    k = laws.crest_factor_k(feed.series, specimens.capacitance, specimens.frequency)
-    crest = k * specimens.crest
+    k = laws.crest_factor_k(feed.series, feed.capacitance, specimens.frequency)
+    crest = k * feed.crest
     across_capacitor = laws.capacitor_voltage(crest, swing)
     with np.errstate(divide="ignore", invalid="ignore"):
-        capacitive = laws.capacitor_line_current(crest, specimens.frequency, specimens.capacitance, swing)
-        resistive = laws.resistor_line_current(specimens.crest, feed.parallel + feed.series, swing)
+        capacitive = laws.capacitor_line_current(crest, specimens.frequency, feed.capacitance, swing)
+        resistive = laws.resistor_line_current(feed.crest, feed.parallel + feed.series, swing)
         by_resistance = resistive * np.where(np.isfinite(feed.parallel), feed.parallel, 0.0)
     share = np.hypot(capacitive, 1e-15) ** 2 / (np.hypot(capacitive, 1e-15) ** 2 + resistive**2 + 1e-30)
     flows = feed.connected & ~feed.blocked_by_dc

@@ -15,7 +15,7 @@ from benchtool.quantities import show
 from benchtool.report.bar import SURE, page_bar
 from benchtool.report.layout import Line, Page, padded, paragraph, table
 from benchtool.result import RailState, State, Suspect
-from benchtool.words import CANNOT_TELL, Words, band, expectation, judged, percent, value_of
+from benchtool.words import CANNOT_TELL, Words, band, expectation, judged, percent, typed, value_of
 
 LISTED = 6
 """Suspects listed one by one."""
@@ -137,6 +137,7 @@ def next_lines(
     first, *others = _with_a_dead_one(checks)
     text = f"{_costs(first, words)}. {CONDITIONS[first.condition]} {tells(first, suspects)}"
     lines = paragraph(page, text, first="NEXT  ")
+    lines.extend(paragraph(page, f'--reading "{typed(first.check)}"', first="type  "))
     for number, check in enumerate(others):
         lines.extend(paragraph(page, f"{_costs(check, words)}.", first="then  " if number == 0 else "      "))
     return lines

@@ -50,9 +50,7 @@ def report_lines(assessment: Assessment, page: Page) -> list[Line]:
         case_lines(assessment.case, page),
         headline_lines(assessment, page),
     ]
-    if assessment.cannot is None:
-        blocks.extend(_verdict_blocks(assessment, words, page))
-    blocks.append(unused_lines(assessment, words, page))
+    blocks.extend(_verdict_blocks(assessment, words, page))
     filled = [block for block in blocks if block]
     return [line for number, block in enumerate(filled) for line in ((*GAP, *block) if number else block)]
 
@@ -106,7 +104,7 @@ def case_lines(case: Case, page: Page) -> list[Line]:
 def headline_lines(assessment: Assessment, page: Page) -> list[Line]:
     """One headline to act on, and the sentence that says how."""
     head, rest, action = _headline(assessment)
-    if _no_mains(assessment.case) and assessment.cannot is None:
+    if _no_mains(assessment.case):
         action = "No mains reached the board while reading: plug, fuse, transformer."
     action = " ".join([action, *_cause(assessment.suspects)])
     return [*paragraph(page, rest, first=f"{head}  ", rest="  ", role="headline"), *paragraph(page, action)]
@@ -127,8 +125,6 @@ def _cause(suspects: tuple[Suspect, ...]) -> Iterator[str]:
 
 def _headline(assessment: Assessment) -> tuple[str, str, str]:
     """The verdict in capitals, what belongs to it, and the sentence to act on."""
-    if assessment.cannot is not None:
-        return "NO VERDICT", "", assessment.cannot
     suspects = assessment.suspects
     best = suspects[0]
     share = percent(best.probability)
@@ -239,12 +235,3 @@ def _against(assessment: Assessment, words: Words) -> Iterator[str]:
     if budget is not None and budget.rule_of_thumb is not None:
         thumb = show(budget.rule_of_thumb, "A")
         yield f"Application notes' rule of thumb would say {thumb}: that is the RMS of a half sine, not the mean."
-
-
-def unused_lines(assessment: Assessment, words: Words, page: Page) -> list[Line]:
-    """Readings that were taken and carry no weight, so that nobody believes they do."""
-    return [
-        line
-        for reading in assessment.unused
-        for line in paragraph(page, f"{words.check(reading)}: {value_of(reading)}", first="NOT WEIGHED  ")
-    ]
