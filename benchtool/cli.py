@@ -10,7 +10,8 @@ import argparse
 import os
 import shlex
 import sys
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
+from contextlib import contextmanager
 from typing import TYPE_CHECKING, NoReturn, TextIO
 
 import benchtool
@@ -25,6 +26,7 @@ if TYPE_CHECKING:
 PROGRAM = "benchtool"
 COMMANDS = ("assess", "new")
 USAGE, FILE, INTERRUPTED = 2, 4, 130
+WORKING = "Trying every fault on boards within tolerance ..."
 STDIN = "-"
 
 CAUTION = """\
@@ -168,7 +170,8 @@ def _assess(arguments: argparse.Namespace) -> int:
     case = _case(arguments.case)
     merge = merged(case.readings, given_readings(arguments.reading, case.board))
     case = replace(case, readings=merge.readings)
-    assessment = assess(case)
+    with _working():
+        assessment = assess(case)
     backup = dump(case, arguments.case) if arguments.save else None
     if arguments.json:
         _write_json(assessment, sys.stdout)
@@ -180,6 +183,21 @@ def _assess(arguments: argparse.Namespace) -> int:
         notes += saved_lines(merge, arguments.case, backup, page)
     write_lines([Line(""), *notes] if notes else [], sys.stdout, styled=False)
     return 0
+
+
+@contextmanager
+def _working() -> Iterator[None]:
+    """Says on a terminal what takes a second or two, and wipes it away again."""
+    if sys.stderr is None or not sys.stderr.isatty():
+        yield
+        return
+    sys.stderr.write(f"{WORKING}\r")
+    sys.stderr.flush()
+    try:
+        yield
+    finally:
+        sys.stderr.write(f"{' ' * len(WORKING)}\r")
+        sys.stderr.flush()
 
 
 def _cannot_save(arguments: argparse.Namespace) -> str | None:

@@ -381,3 +381,20 @@ def test_public_names_are_there_on_asking() -> None:
     name = "nothing"
     with pytest.raises(AttributeError, match="no attribute 'nothing'"):
         getattr(benchtool, name)
+
+
+class _Terminal(io.StringIO):
+    def isatty(self) -> bool:
+        return True
+
+
+def test_a_terminal_is_told_what_takes_its_time_and_nothing_of_it_stays(
+    case_file: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    terminal = _Terminal()
+    monkeypatch.setattr(sys, "stderr", terminal)
+    assert cli.main(["assess", str(case_file), "--json"]) == 0
+    first, wiped, last = terminal.getvalue().split("\r")
+    assert first == cli.WORKING
+    assert wiped == " " * len(cli.WORKING)
+    assert last == ""
