@@ -151,7 +151,7 @@ def _number_table(shown: Sequence[Shown], shares: Sequence[Array], kind: Reading
     """Joint shares of hypothesis and class: the kind's words first, then numbers, blurred by their own sigma."""
     blurred = [_scaled(_blur(item, kind, meter), kind) for item in shown]
     numbers = [_is_number(item, kind) for item in shown]
-    sigma = _resolution(shown, blurred, numbers, shares, kind, meter)
+    sigma = _resolution(shown, numbers, shares, kind, meter)
     seen = np.concatenate([values[number] for values, number in zip(blurred, numbers, strict=True)] or [np.zeros(1)])
     low, high = (float(seen.min()), float(seen.max())) if seen.size else (0.0, 1.0)
     classes = int(np.clip((high - low) / max(2.0 * sigma, 1e-12), 1, CLASSES))
@@ -191,8 +191,7 @@ def _blur(shown: Shown, kind: ReadingKind, meter: Meter) -> Array:
 
 
 def _resolution(
-    shown: Sequence[Shown], blurred: Sequence[Array], numbers: Sequence[Flags], shares: Sequence[Array],
-    kind: ReadingKind, meter: Meter,
+    shown: Sequence[Shown], numbers: Sequence[Flags], shares: Sequence[Array], kind: ReadingKind, meter: Meter
 ) -> float:
     """A typical sigma on the scale of the classes: the mean over all specimens' shares."""
     total, weight = 0.0, 0.0

@@ -22,7 +22,7 @@ from benchtool.physics.network import (
     across,
     add_loads,
     add_rails,
-    load_branch,
+    load_figures,
     network_of,
     rail_zener,
 )
@@ -97,10 +97,7 @@ def settle(specimens: Specimens, on: tuple[str, ...], *, warm: bool = False) -> 
     zener_current, zener_power = _zeners(hot, rails)
     if shape.zener_at_node:
         zener_power[0] += supply * known.DIODE_DROP
-    voltages = np.array([across(rails, load.rail, load.returns_to) for load in shape.loads])
-    voltages = voltages.reshape(len(shape.loads), specimens.count)
-    pulsed = mean_pulses(specimens)
-    currents = [load_branch(network, index, voltages[index], pulsed[index])[0] for index in range(len(shape.loads))]
+    voltages, currents = load_figures(network, rails, mean_pulses(specimens))
     side = mains_side(feed, rails[0])
     ripple = ripple_estimate(hot, rails, supply, zener_current)
     rectified = supply * (rails[0] + 2.0 * known.DIODE_DROP)
@@ -119,7 +116,7 @@ def settle(specimens: Specimens, on: tuple[str, ...], *, warm: bool = False) -> 
         dropper_voltage=side.dropper_voltage,
         dropper_dc=side.dropper_dc,
         load_voltage=voltages,
-        load_current=np.array(currents).reshape(len(shape.loads), specimens.count),
+        load_current=currents,
         converged=found.solved,
     )
 

@@ -166,3 +166,12 @@ def add_loads(balance: Balance, network: Network, rails: Array, pulsed: tuple[fl
     for index, load in enumerate(network.specimens.shape.loads):
         voltage = across(rails, load.rail, load.returns_to)
         balance.branch(load.rail, load.returns_to, load_branch(network, index, voltage, pulsed[index]))
+
+
+def load_figures(network: Network, rails: Array, pulsed: tuple[float, ...]) -> tuple[Array, Array]:
+    """Voltage across every load [V] and its current [A] at mean `rails` (rails, n) [V], each (loads, n); `pulsed` as above."""
+    loads = network.specimens.shape.loads
+    shape = len(loads), network.specimens.count
+    voltages = np.array([across(rails, load.rail, load.returns_to) for load in loads]).reshape(shape)
+    currents = [load_branch(network, index, voltages[index], pulsed[index])[0] for index in range(len(loads))]
+    return voltages, np.array(currents).reshape(shape)

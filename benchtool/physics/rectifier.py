@@ -65,7 +65,6 @@ class Rectifier:
         self.legs = LEGS[bridge, Junction(int(specimens.junction[0]))]
         at_node = specimens.shape.zener_at_node
         self.zener = specimens.zener[0] if at_node and self.legs.diodes != 0 else None
-        self.zener_on_rail = at_node and self.legs.diodes == 0
         self.drop = np.full(specimens.count, known.DIODE_DROP)
         self._returns = np.isfinite(specimens.zener[0]) if at_node else np.full(specimens.count, self.legs.returns)
         self.blocks = ~self._returns & (not self.legs.full_wave) & (self.legs.diodes is not None)

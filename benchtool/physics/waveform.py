@@ -16,7 +16,7 @@ from benchtool.physics import constants as known
 from benchtool.physics.cycle import Cycle, Held, Measured, first_guess
 from benchtool.physics.laws import Array, Flags
 from benchtool.physics.mean_value import Means, mean_pulses, means
-from benchtool.physics.network import Balance, Network, across, add_loads, add_rails, load_branch
+from benchtool.physics.network import Balance, Network, add_loads, add_rails, load_figures
 from benchtool.physics.rectifier import Rectifier
 from benchtool.physics.settled import Settled
 from benchtool.physics.specimens import Specimens
@@ -154,10 +154,8 @@ def _ahead(network: Network, measured: Measured, steps: int, drift: Array) -> Ar
 
 
 def _assembled(specimens: Specimens, start: Means, figures: _Figures) -> Settled:
-    rails, single, shape = figures.rails, figures.singles, specimens.shape
-    voltages = np.array([across(rails["mean"], load.rail, load.returns_to) for load in shape.loads])
-    voltages = voltages.reshape(len(shape.loads), specimens.count)
-    currents = [load_branch(start.network, index, voltages[index])[0] for index in range(len(shape.loads))]
+    rails, single = figures.rails, figures.singles
+    voltages, currents = load_figures(start.network, rails["mean"], mean_pulses(specimens))
     return Settled(
         specimens=specimens,
         rail_voltage=rails["mean"],
@@ -171,6 +169,6 @@ def _assembled(specimens: Specimens, start: Means, figures: _Figures) -> Settled
         dropper_voltage=np.sqrt(np.maximum(single["dropper_square"] - single["dropper"] ** 2, 0.0)),
         dropper_dc=np.abs(single["dropper"]),
         load_voltage=voltages,
-        load_current=np.array(currents).reshape(len(shape.loads), specimens.count),
+        load_current=currents,
         converged=figures.converged & start.solved,
     )

@@ -191,7 +191,7 @@ def _replacement(best: Suspect, board: Board) -> Iterator[str]:
 def effective_lines(assessment: Assessment, words: Words, page: Page) -> list[Line]:
     """What the dropper acts as, by which reading, against where the rail lets go and what is marked."""
     effective = assessment.effective or Effective()
-    sentences = [_acts_as(effective, words), *_against(assessment, words)]
+    sentences = [_acts_as(effective, words), *_against(assessment)]
     return paragraph(page, " ".join(sentence for sentence in sentences if sentence))
 
 
@@ -219,7 +219,7 @@ def _source(effective: Effective, words: Words) -> str:
     return " and ".join(f"{value_of(reading)} ({words.check(reading)})" for reading in effective.readings)
 
 
-def _against(assessment: Assessment, words: Words) -> Iterator[str]:
+def _against(assessment: Assessment) -> Iterator[str]:
     board, budget = assessment.case.board, assessment.budget
     dropper = board.dropper
     if dropper.kind != "resistor":
