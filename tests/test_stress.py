@@ -1,19 +1,18 @@
-"""Powers, stored charge and bleeder strings: against sums of every part's heat, and the standards' discharge limits."""
+"""Powers on the mains side against sums of every part's heat; volts and watts of dropper and bleeder against the circuit."""
 
 from __future__ import annotations
 
-from collections.abc import Callable
 from dataclasses import replace
 
 import numpy as np
 import pytest
+from scipy.integrate import quad
 
 from benchtool.board import UNKNOWN, Bleeder, Board, Dropper
-from benchtool.physics import constants as known
-from benchtool.physics.mean_value import settle
 from benchtool.physics.settled import Settled
 from benchtool.physics.specimens import as_marked
-from benchtool.physics.stress import bleeder_share, discharge_of, highest_crest, mains_power
+from benchtool.physics.stress import Stress, bleeder_share, highest_crest, mains_power, mains_stress
+from benchtool.physics.waveform import settle
 from tests.small_boards import board, coil, draws, rail, three_rails
 
 LOADS = (coil(810.0), draws(0.0035, "logic"))
@@ -82,15 +81,17 @@ def test_real_power_is_the_sum_of_every_part_s_heat(made: Board, on: tuple[str, 
 def test_zener_power_is_volts_times_amperes() -> None:
     settled = settled_of(THREE)
     volts = settled.rail_voltage[:, 0] - np.array([settled.rail_voltage[1, 0], 0.0, 0.0])
-    np.testing.assert_allclose(settled.zener_power[:, 0], volts * settled.zener_current[:, 0], rtol=1e-6)
+    # By the means; what the ripple adds, volts and amperes rising together, is less than a thousandth on 4.7 mF.
+    np.testing.assert_allclose(settled.zener_power[:, 0], volts * settled.zener_current[:, 0], rtol=1e-3)
 
 
 def test_zener_at_the_node_burns_in_both_half_waves() -> None:
-    # Reverse at its own voltage, forward at a diode's drop with everything the rectifier carries: charge balance.
+    # Reverse at its own voltage, forward at a diode's drop with everything the rectifier carries: charge balance. The diode's
+    # drop is not 0.7 V at every current: within 5 % of 0.7 W an ampere, half a percent of the whole.
     settled = settled_of(BOARDS["half-wave-zener"])
     own = (settled.rail_voltage[0, 0] + 0.7) * settled.zener_current[0, 0]
     forward = 0.7 * (settled.supply_current[0] + settled.zener_current[0, 0])
-    assert settled.zener_power[0, 0] == pytest.approx(own + forward, rel=1e-6)
+    assert settled.zener_power[0, 0] == pytest.approx(own + forward, rel=0.005)
 
 
 @pytest.mark.parametrize("made", BOARDS.values(), ids=BOARDS.keys())
@@ -113,94 +114,18 @@ def test_a_resistor_dropper_is_nearly_a_resistive_load() -> None:
 def test_an_open_path_takes_nothing() -> None:
     opened = replace(as_marked(BOARDS["bridge"]), inrush=np.array([np.inf]))
     power = mains_power(settle(opened, ()))
-    for figure in (power.inrush_voltage, power.inrush_power, power.apparent, power.real, power.factor):
-        assert figure[0] == 0.0
+    assert (power.inrush_voltage[0], power.inrush_power[0], power.factor[0]) == (0.0, 0.0, 0.0)
+    # A microwatt or less is a solver's way of writing nothing.
+    assert power.apparent[0] < 1e-6
+    assert power.real[0] < 1e-6
 
 
-# Discharge -----------------------------------------------------------------------------------------------------------------
+# At the highest mains ------------------------------------------------------------------------------------------------------
 
 
 def test_highest_crest() -> None:
     # 230 V +10 % is 253 V (IEC 60038), its crest √2 times that.
     assert highest_crest(board()) == pytest.approx(np.sqrt(2.0) * 253.0)
-
-
-def test_the_slowest_corner_is_told() -> None:
-    # Dropper and bleeder each at the high end, mains at its highest, by V0·exp(-t/RC): 0.517 µF, 1.05 MΩ, 357.8 V.
-    found = discharge_of(board(bleeder=0.5e6, in_series=2))
-    assert found.start == pytest.approx(357.8, abs=0.1)
-    assert found.capacitance == pytest.approx(0.517e-6)
-    assert found.bleeder == pytest.approx(1.05e6)
-    assert found.to_limit is not None
-    assert found.start * np.exp(-found.to_limit / (0.517e-6 * 1.05e6)) == pytest.approx(34.0)
-
-
-def test_a_larger_part_found_in_place_counts() -> None:
-    assert discharge_of(board(dropper=Dropper(capacitance=0.33e-6, fitted=0.47e-6))).capacitance == pytest.approx(0.517e-6)
-    assert discharge_of(board(dropper=Dropper(capacitance=0.47e-6, fitted=0.33e-6))).capacitance == pytest.approx(0.517e-6)
-
-
-def test_without_a_bleeder_there_is_no_time_to_tell_and_the_plug_stays_live() -> None:
-    found = discharge_of(board())
-    assert (found.bleeder, found.to_limit, found.wait) == (None, None, None)
-    assert found.slow is True
-    assert found.energy is not None
-
-
-def test_the_wait_is_at_least_five_time_constants() -> None:
-    # After five time constants 0.7 % is left: 2.4 V of 358 V, under what counts as dead.
-    found = discharge_of(board(bleeder=2.2e6, in_series=2))
-    assert found.wait is not None
-    assert found.wait >= 5.0 * 0.517e-6 * 4.62e6
-    assert found.start * np.exp(-found.wait / (0.517e-6 * 4.62e6)) < known.DEAD_VOLTS
-
-
-EXEMPT: dict[str, Callable[[], Board]] = {
-    # IEC 60335-1 22.5: pins of a plug; exempt up to 0.1 µF.
-    "fixed": lambda: board(connected_by="fixed"),
-    "0.1 µF": lambda: board(capacitance=0.1e-6, tolerance=0.0),
-    "resistor": lambda: board(dropper=Dropper(kind="resistor", resistance=10e3)),
-}
-
-
-@pytest.mark.parametrize("made", EXEMPT.values(), ids=EXEMPT.keys())
-def test_no_limit_applies(made: Callable[[], Board]) -> None:
-    found = discharge_of(made())
-    assert found.limited is False
-    assert found.slow is False
-
-
-def test_the_exemption_speaks_of_the_rated_capacitance() -> None:
-    # IEC 60335-1 22.5 (that it is the rated value: value from memory): the tolerance does not lift 0.1 µF over it.
-    assert discharge_of(board(capacitance=0.1e-6, tolerance=0.1)).limited is False
-    assert discharge_of(board(capacitance=0.12e-6, tolerance=0.1)).limited is True
-
-
-def test_what_cannot_be_read_is_not_judged() -> None:
-    charred = discharge_of(board(dropper=Dropper(capacitance=UNKNOWN), bleeder=1e6))
-    assert charred.limited is True
-    assert (charred.capacitance, charred.to_limit, charred.energy, charred.slow) == (None, None, None, None)
-    string = discharge_of(replace(board(), bleeder=Bleeder(resistance=UNKNOWN)))
-    assert (string.bleeder, string.to_limit) == (None, None)
-
-
-def test_a_bleeder_that_was_read_stands_in_the_marks_place() -> None:
-    # By hand: 0.517 µF · 2 Mohm = 1.034 s, rounded up to whole seconds and five of them; read open, nothing empties it.
-    fitted = board(bleeder=0.5e6, in_series=2)
-    found = discharge_of(fitted, 2e6)
-    assert found.bleeder == 2e6
-    assert found.to_limit == pytest.approx(0.517e-6 * 2e6 * np.log(np.sqrt(2.0) * 253.0 / 34.0))
-    assert found.wait == 10.0
-    opened = discharge_of(fitted, np.inf)
-    assert (opened.bleeder, opened.to_limit, opened.left, opened.wait) == (None, None, None, None)
-    assert opened.slow is True
-    assert opened.has_bleeder is False
-    assert discharge_of(fitted, 0.0).to_limit == pytest.approx(0.0, abs=1e-5)
-
-
-def test_a_bleeder_that_cannot_be_read_is_neither_slow_nor_quick() -> None:
-    # It is there: "None where that cannot be known", as `Discharge.slow` says itself.
-    assert discharge_of(replace(board(), bleeder=Bleeder(resistance=UNKNOWN))).slow is None
 
 
 @pytest.mark.parametrize(("in_series", "volts"), [(1, 264.0), (2, 132.0), (3, 88.0)])
@@ -211,3 +136,73 @@ def test_bleeder_share_at_the_highest_mains(in_series: int, volts: float) -> Non
 
 def test_no_bleeder_no_share() -> None:
     assert bleeder_share(board()) is None
+
+
+def stress_on(made: Board, part: str) -> Stress:
+    return next(each for each in mains_stress(made) if each.part == part)
+
+
+def test_bleeder_string_across_240_v() -> None:
+    # Row 18: chip resistors of the common size hold about 200 V each; across 240 V mains a bleeder takes two in series.
+    def string(in_series: int) -> Stress:
+        fitted = Bleeder(resistance=470e3, in_series=in_series, tolerance=0.05, rated_voltage=200.0)
+        return stress_on(replace(board(volts=240.0), bleeder=fitted), "bleeder")
+
+    assert string(1).ratio == pytest.approx(264.0 / 200.0)
+    assert string(2).ratio == pytest.approx(132.0 / 200.0)
+
+
+@pytest.mark.parametrize("in_series", [1, 3])
+def test_bleeder_power_is_the_mean_of_volts_times_amperes(in_series: int) -> None:
+    # 240 V +10 %, each resistor 5 % under its mark: the mean over a cycle of 50 Hz, integrated.
+    low = 470e3 * 0.95
+
+    def power(seconds: float) -> float:
+        return float((np.sqrt(2.0) * 264.0 / in_series * np.sin(100.0 * np.pi * seconds)) ** 2 / low)
+
+    found = stress_on(board(volts=240.0, bleeder=470e3, in_series=in_series), "bleeder").watts
+    assert found == pytest.approx(quad(power, 0.0, 0.02)[0] / 0.02)
+
+
+def test_bleeder_power_at_a_stated_tolerance() -> None:
+    # 253 V squared over 1 Mohm less 1 %.
+    assert stress_on(board(bleeder=1e6, tolerance=0.01), "bleeder").watts == pytest.approx(253.0**2 / 0.99e6)
+
+
+def test_a_dropper_stands_the_highest_mains_against_its_mark() -> None:
+    # 230 V +10 % is 253 V (IEC 60038); 310 V and 250 V AC as parts are marked.
+    marked = stress_on(board(dropper=Dropper(capacitance=470e-9, rated_voltage=310.0)), "dropper")
+    assert marked.volts == pytest.approx(253.0)
+    assert marked.ratio == pytest.approx(253.0 / 310.0)
+    beyond = stress_on(board(dropper=Dropper(capacitance=470e-9, rated_voltage=250.0)), "dropper")
+    assert beyond.ratio is not None
+    assert beyond.ratio > 1.0
+    assert stress_on(board(), "dropper").ratio is None
+
+
+def test_a_divider_s_shunt_takes_its_share() -> None:
+    # By impedances: 1 µF and 10 µF without tolerance at 50 Hz; and 10 % each the wrong way.
+    def share(dropper: float, shunt: float) -> float:
+        impedances = [1.0 / (100j * np.pi * dropper), 1.0 / (100j * np.pi * shunt)]
+        return float(abs(impedances[1] / sum(impedances)))
+
+    exact = Dropper(kind="divider", capacitance=1e-6, shunt_capacitance=10e-6, tolerance=0.0)
+    assert stress_on(board(dropper=exact), "shunt").volts == pytest.approx(253.0 * share(1e-6, 10e-6))
+    spread = replace(exact, tolerance=0.1)
+    assert stress_on(board(dropper=spread), "shunt").volts == pytest.approx(253.0 * share(1.1e-6, 9e-6))
+    # A larger part than marked, found in place, leaves the shunt more.
+    assert stress_on(board(dropper=replace(exact, fitted=2e-6)), "shunt").volts == pytest.approx(253.0 * share(2e-6, 10e-6))
+
+
+def test_what_cannot_be_read_takes_all_the_volts_and_has_no_watts() -> None:
+    charred = Dropper(kind="divider", capacitance=1e-6, shunt_capacitance=UNKNOWN)
+    assert stress_on(board(dropper=charred), "shunt").volts == pytest.approx(253.0)
+    faded = stress_on(replace(board(), bleeder=Bleeder(resistance=UNKNOWN, rated_voltage=200.0)), "bleeder")
+    assert faded.watts is None
+    assert faded.ratio == pytest.approx(253.0 / 200.0)
+
+
+def test_only_parts_that_are_there_are_told() -> None:
+    assert [each.part for each in mains_stress(board())] == ["dropper"]
+    divider = Dropper(kind="divider", capacitance=1e-6, shunt_capacitance=10e-6)
+    assert [each.part for each in mains_stress(board(dropper=divider, bleeder=1e6))] == ["dropper", "shunt", "bleeder"]

@@ -8,7 +8,7 @@ from __future__ import annotations
 
 from benchtool.board import Board
 from benchtool.physics import constants as known
-from benchtool.physics.stress import Discharge, discharge_of
+from benchtool.physics.discharge import Discharge, discharge_of, hold_seconds
 from benchtool.quantities import show, show_up
 
 DEFERS = "Local codes and licensed practice come first."
@@ -22,12 +22,13 @@ def cautions(board: Board, *, bleeder_read: float | None = None, ascii: bool = F
     discharge = discharge_of(board, bleeder_read)
     bleeder = "if its bleeder is whole" if bleeder_read is None else "through its bleeder as read"
     mains = show(board.mains.voltage * (1.0 + board.mains.variation), "V", ascii=ascii)
+    hold = show_up(hold_seconds(board, bleeder_read), "s", ascii=ascii)
     dead = show(known.DEAD_VOLTS, "V", ascii=ascii)
     return (
         f"NOT ISOLATED: every point of this board, common included, can be at {mains} to earth. Power it on the bench only "
         "through an isolating transformer, with no earthed instrument on it; isolated is not shock-free, two points still kill.",
         f"STORED CHARGE: {_stored(discharge, bleeder, ascii)} Unplug, {_wait(discharge, ascii)}discharge the dropper and "
-        f"every reservoir through 10 k{'ohm' if ascii else 'Ω'} 5 W, held on for 15 s, then measure: each of them and the plug "
+        f"every reservoir through 10 k{'ohm' if ascii else 'Ω'} 5 W, held on for {hold}, then measure: each of them and the plug "
         f"pins must be under {dead} on a DC range, an AC range reads a charge as zero. Prove the meter before and after.",
         DEFERS,
     )

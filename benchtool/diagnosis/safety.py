@@ -14,7 +14,8 @@ from benchtool.board import Board, Rail, Unknown, nominal_voltage
 from benchtool.diagnosis.posterior import Posterior
 from benchtool.observed import Reading
 from benchtool.physics import constants as known
-from benchtool.physics.stress import Discharge, bleeder_share, discharge_of, highest_crest
+from benchtool.physics.discharge import Discharge, discharge_of, worst_voltage
+from benchtool.physics.stress import bleeder_share
 from benchtool.quantities import show, show_up
 
 ROUNDING = 1e-9
@@ -114,7 +115,7 @@ def _zeners(board: Board, readings: Sequence[Reading], chances: Mapping[str, flo
         sure = rail.zener is not None and _shows_open(board, rail, readings)
         probability = 1.0 if sure else min(chances.get(rail.name, 0.0), 1.0)
         if probability >= SUSPECTED_FROM:
-            yield Finding("zener-open", probability, {"climbs_V": _climbs_to(board, rail)}, rail.name)
+            yield Finding("zener-open", probability, {"climbs_V": worst_voltage(board, rail)}, rail.name)
 
 
 def _shows_open(board: Board, rail: Rail, readings: Sequence[Reading]) -> bool:
@@ -132,20 +133,6 @@ def _held_to(board: Board, rail: Rail) -> float:
     if rated is None:
         return held
     return min(held, max(rated, WHOLE_ZENER * (nominal or 0.0)))
-
-
-def _climbs_to(board: Board, rail: Rail) -> float:
-    """How high the rail may climb without its zener [V].
-
-    As high as the rail that feeds it through a resistor or regulator, where that one is held; else to the crest, which anything
-    but a bridge can pump to twice as much through a capacitor: the series diode adds what the dropper was left charged to.
-    """
-    if rail.fed_through in ("resistor", "regulator"):
-        upper = board.rail(rail.fed_by)
-        held = nominal_voltage(board, upper)
-        return _climbs_to(board, upper) if held is None else held
-    pumped = board.rectifier != "bridge" and board.dropper.kind != "resistor"
-    return highest_crest(board) * (2.0 if pumped else 1.0)
 
 
 def _bleeder(board: Board, discharge: Discharge, readings: Sequence[Reading]) -> list[Finding]:

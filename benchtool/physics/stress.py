@@ -1,18 +1,24 @@
-"""What the parts and the mains carry: powers, bleeder strings, stored charge and the time it takes to leave."""
+"""What the parts on the mains side carry: powers while the board runs, and volts and watts of dropper and bleeder at worst.
+
+Against these figures a replacement is chosen and a bleeder string is judged; what they are compared with is printed on the
+part. What stays in the parts after unplugging stands in `discharge`, the moment of switching on in `surge`.
+"""
 
 from __future__ import annotations
 
-import math
 from dataclasses import dataclass
 
 import numpy as np
 
-from benchtool.board import Board, Unknown
+from benchtool.board import Bleeder, Board, Unknown
 from benchtool.physics import constants as known
 from benchtool.physics import laws
 from benchtool.physics.budget import dropper_tolerance
 from benchtool.physics.laws import Array
 from benchtool.physics.settled import Settled
+
+LEAST_APPARENT = 1e-6
+"""Apparent power under which nothing flows and there is no power factor [VA]: a solver's remnant on an open path."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -34,109 +40,72 @@ def mains_power(settled: Settled) -> MainsPower:
     loss = 2.0 * np.pi * specimens.frequency * specimens.capacitance * known.DROPPER_LOSS_TANGENT
     real = settled.real_power + loss * settled.dropper_voltage**2
     apparent = specimens.mains * current
-    factor = real / np.maximum(apparent, 1e-12)
+    factor = np.where(apparent > LEAST_APPARENT, real / np.maximum(apparent, LEAST_APPARENT), 0.0)
     return MainsPower(current * inrush, current**2 * inrush, apparent, real, np.minimum(factor, 1.0))
+
+
+def highest_mains(board: Board) -> float:
+    """The highest mains the board may see [V RMS]: nominal · (1 + variation)."""
+    return board.mains.voltage * (1.0 + board.mains.variation)
 
 
 def highest_crest(board: Board) -> float:
     """The crest of the highest mains the board may see [V]: √2 · nominal · (1 + variation)."""
-    return float(np.sqrt(2.0)) * board.mains.voltage * (1.0 + board.mains.variation)
-
-
-TIME_CONSTANTS = 5.0
-"""Time constants to wait before the discharge by hand: 0.7 % of the crest is left. Common practice, no source."""
-SHORTEST_BLEEDER = 1.0
-"""A bleeder read under this counts as this [ohm]: no meter tells it from its leads."""
+    return float(np.sqrt(2.0)) * highest_mains(board)
 
 
 @dataclass(frozen=True, slots=True)
-class Discharge:
-    """What the dropper keeps after unplugging, in the slowest corner: capacitance [F], bleeder [ohm], times [s].
+class Stress:
+    """One part, named as in the case file, at the highest mains: volts [V RMS] and watts [W] on each piece of it.
 
-    None where a value cannot be known; `bleeder` and the times are None as well where `has_bleeder` is false: none is fitted,
-    or it was read open. `wait` is in whole `TIME_CONSTANTS` seconds. `left` [V] is
-    what the pins still hold when the limit's time is over. `limited`: whether a limit at the plug applies at all
-    (plug-connected and over 0.1 µF).
+    `rated` [V RMS] is what the case states for it, None where it states nothing; `watts` None for a capacitor, and where the
+    resistance cannot be read.
     """
 
-    start: float
-    capacitance: float | None
-    bleeder: float | None
-    to_limit: float | None
-    left: float | None
-    wait: float | None
-    energy: float | None
-    limited: bool
-    has_bleeder: bool
+    part: str
+    volts: float
+    rated: float | None
+    watts: float | None
 
     @property
-    def slow(self) -> bool | None:
-        """Whether the plug stays above its limit for too long; None where that cannot be known."""
-        if not self.limited:
-            return False
-        if self.to_limit is not None:
-            return self.to_limit > known.PLUG_LIMIT_SECONDS
-        return None if self.has_bleeder else True
+    def ratio(self) -> float | None:
+        """Volts as a share of the rated ones [1]: over 1 is beyond the rating; None where no rating is stated."""
+        return None if self.rated is None else self.volts / self.rated
 
 
-def discharge_of(board: Board, bleeder_read: float | None = None) -> Discharge:
-    """The dropper's discharge through its bleeder: highest crest, dropper and bleeder at the high end of their tolerance.
-
-    `bleeder_read` [ohm] is what the whole string was read as, infinite for open; it stands in the mark's place.
-    """
-    capacitance, bleeder = _highest_capacitance(board), _bleeder(board, bleeder_read)
-    start = highest_crest(board)
-    time, wait, left = None, None, None
-    if capacitance is not None and bleeder is not None:
-        time = float(laws.discharge_time(start, bleeder, capacitance, known.PLUG_LIMIT_VOLTS))
-        left = float(laws.discharge_voltage(start, bleeder, capacitance, known.PLUG_LIMIT_SECONDS))
-        wait = TIME_CONSTANTS * float(np.ceil(bleeder * capacitance))
-    return Discharge(
-        start=start,
-        capacitance=capacitance,
-        bleeder=bleeder,
-        to_limit=time,
-        left=left,
-        wait=wait,
-        energy=None if capacitance is None else 0.5 * capacitance * start**2,
-        limited=_limited(board),
-        has_bleeder=board.bleeder is not None and bleeder_read != math.inf,
-    )
-
-
-def _limited(board: Board) -> bool:
-    """The limit speaks of the rated capacitance; one that cannot be read may be over the exempt one."""
-    marked = board.dropper.capacitance
-    if board.connected_by == "fixed" or marked is None:
-        return False
-    return isinstance(marked, Unknown) or max(marked, board.dropper.fitted or 0.0) > known.PLUG_EXEMPT
-
-
-def _highest_capacitance(board: Board) -> float | None:
-    value = board.dropper.capacitance
-    if board.dropper.kind == "resistor" or value is None or isinstance(value, Unknown):
-        return None
-    fitted = board.dropper.fitted or 0.0
-    return max(value, fitted) * (1.0 + dropper_tolerance(board))
-
-
-def _bleeder(board: Board, read: float | None) -> float | None:
-    if read is None or board.bleeder is None:
-        return _highest_bleeder(board)
-    return None if read == math.inf else max(read, SHORTEST_BLEEDER)
-
-
-def _highest_bleeder(board: Board) -> float | None:
-    bleeder = board.bleeder
-    if bleeder is None or isinstance(bleeder.resistance, Unknown):
-        return None
-    tolerance = known.RESISTOR_TOLERANCE if bleeder.tolerance is None else bleeder.tolerance
-    return bleeder.resistance * bleeder.in_series * (1.0 + tolerance)
+def mains_stress(board: Board) -> tuple[Stress, ...]:
+    """The dropper, a divider's shunt and one resistor of the bleeder string, as far as they are there, at the highest mains."""
+    whole = highest_mains(board)
+    found = [Stress("dropper", whole, board.dropper.rated_voltage, None)]
+    if board.dropper.kind == "divider":
+        found.append(Stress("shunt", whole * _divided(board), None, None))
+    if board.bleeder is not None:
+        found.append(_bleeder(board.bleeder, whole))
+    return tuple(found)
 
 
 def bleeder_share(board: Board) -> float | None:
     """The highest voltage over one resistor of the bleeder string [V]: RMS of the highest mains, shared; None without one."""
-    if board.bleeder is None:
-        return None
-    return laws.string_share(board.mains.voltage * (1.0 + board.mains.variation), board.bleeder.in_series)
+    return None if board.bleeder is None else _bleeder(board.bleeder, highest_mains(board)).volts
 
+
+def _bleeder(bleeder: Bleeder, whole: float) -> Stress:
+    """Each resistor with its share of the whole mains over it; the power V²/R at the low end of its tolerance."""
+    share = laws.string_share(whole, bleeder.in_series)
+    if isinstance(bleeder.resistance, Unknown):
+        return Stress("bleeder", share, bleeder.rated_voltage, None)
+    tolerance = known.RESISTOR_TOLERANCE if bleeder.tolerance is None else bleeder.tolerance
+    return Stress("bleeder", share, bleeder.rated_voltage, share**2 / (bleeder.resistance * (1.0 - tolerance)))
+
+
+def _divided(board: Board) -> float:
+    """Share of the mains over a divider's shunt that no rectifier holds down, dropper high and shunt low in tolerance.
+
+    All of it where one of the two cannot be read: a bound from above. Capacitive divider, Kirchhoff.
+    """
+    dropper, shunt = board.dropper.capacitance, board.dropper.shunt_capacitance
+    if dropper is None or shunt is None or isinstance(dropper, Unknown) or isinstance(shunt, Unknown):
+        return 1.0
+    tolerance = dropper_tolerance(board)
+    high, low = max(dropper, board.dropper.fitted or 0.0) * (1.0 + tolerance), shunt * (1.0 - tolerance)
+    return high / (high + low)
