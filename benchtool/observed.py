@@ -61,7 +61,9 @@ class AccuracyOf:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Meter:
-    """Accuracy of the instruments; the defaults of the case format."""
+    """Accuracy of the instruments, the defaults of the case format; `ac_response`: what its AC ranges respond to, the true RMS or
+    the mean magnitude, which is scaled to read a sine right.
+    """
 
     dc_voltage: Annotated[Accuracy, AccuracyOf("V")] = Accuracy(0.005, 0.020)
     ac_voltage: Annotated[Accuracy, AccuracyOf("V")] = Accuracy(0.01, 0.3)
@@ -71,3 +73,4 @@ class Meter:
     resistance: Annotated[Accuracy, AccuracyOf("ohm")] = Accuracy(0.009, 0.2)
     ac_current: Annotated[Accuracy, AccuracyOf("A")] = Accuracy(0.015, 50e-6)
     dc_current: Annotated[Accuracy, AccuracyOf("A")] = Accuracy(0.01, 20e-6)
+    ac_response: Annotated[str, Choice(("true-rms", "average"))] = "true-rms"

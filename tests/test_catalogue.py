@@ -25,10 +25,11 @@ from benchtool.catalogue.faults import (
     UNEXPLAINED_WEIGHT,
 )
 from benchtool.catalogue.readings import READING_KINDS, READINGS
+from benchtool.catalogue.shown import View
 from benchtool.catalogue.shows import SHOWS
 from benchtool.catalogue.strikes import scene_of
 from benchtool.diagnosis.safety import SENTENCES
-from benchtool.observed import Check
+from benchtool.observed import Check, Meter
 from benchtool.physics.bench import Bench
 from benchtool.physics.specimens import Specimens, population
 from tests.some_boards import CONTRACT, FULL, every_board
@@ -264,7 +265,7 @@ def test_chances_of_words_add_up_to_one(name: str) -> None:
         for kind in words:
             for load in board.loads if "load" in kind.needs else (None,):
                 check = Check(what=kind.name, load=load.name if load else None)
-                shown = SHOWS[kind.name](bench, board, check)
+                shown = SHOWS[kind.name](View(bench, board, check, Meter()))
                 assert set(shown.chances) == set(kind.words)
                 stacked = np.array(list(shown.chances.values()))
                 assert (stacked >= 0.0).all()
@@ -281,7 +282,7 @@ def test_numbers_that_a_struck_board_shows_can_be_read(name: str) -> None:
             if kind.unit is None or kind.name not in SHOWS:
                 continue
             check = Check(what=kind.name, rail=board.rails[1].name, load="relay", on=())
-            shown = SHOWS[kind.name](bench, board, check)
+            shown = SHOWS[kind.name](View(bench, board, check, Meter()))
             assert shown.value is not None
             number = np.isfinite(shown.value)
             worded = np.zeros(number.shape, dtype=bool)

@@ -17,7 +17,7 @@ from benchtool.board import Board
 from benchtool.catalogue.accepted import lacking
 from benchtool.catalogue.faults import FAULTS_BY_NAME
 from benchtool.catalogue.readings import READING_KINDS
-from benchtool.catalogue.shows import Shown
+from benchtool.catalogue.shown import Shown
 from benchtool.catalogue.strikes import Place
 from benchtool.diagnosis import checks
 from benchtool.diagnosis.checks import candidates, minutes_of, next_checks
@@ -50,7 +50,7 @@ def known_posterior(probabilities: Sequence[float]) -> Posterior:
 def showing(found: Posterior, shown: Sequence[Shown]) -> Any:
     """What a check shows, hypothesis by hypothesis."""
     by_bench = {id(item.bench): each for item, each in zip(found.evidence, shown, strict=True)}
-    return lambda bench, board, check: by_bench[id(bench)]
+    return lambda view: by_bench[id(view.bench)]
 
 
 def mutual_information(prior: Sequence[float], chances: Sequence[Sequence[float]]) -> float:

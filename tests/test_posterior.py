@@ -20,13 +20,13 @@ from benchtool.board import Board
 from benchtool.case import Case
 from benchtool.catalogue.faults import FAULTS_BY_NAME
 from benchtool.catalogue.readings import READING_KINDS
-from benchtool.catalogue.shows import Shown
+from benchtool.catalogue.shown import Shown, View
 from benchtool.catalogue.strikes import Place
 from benchtool.diagnosis import posterior
 from benchtool.diagnosis.hypotheses import Hypothesis, Struck, hypotheses_of
 from benchtool.diagnosis.likelihood import log_density, log_uniform_density, look_log_chance
 from benchtool.diagnosis.posterior import Evidence, Posterior, log_sum, posterior_of
-from benchtool.observed import Check, Meter, Reading
+from benchtool.observed import Meter, Reading
 from benchtool.physics.bench import Bench
 from benchtool.physics.specimens import as_marked
 from tests.some_boards import CONTRACT, FULL, draw_few, read
@@ -65,9 +65,9 @@ THREE = tuple(read(what, word, load="relay" if what == "switch-test" else None) 
 
 
 def shows_chances(what: str) -> Any:
-    def shows(bench: Bench, board: Board, check: Check) -> Shown:
+    def shows(view: View) -> Shown:
         sound, fused = CHANCES[what]
-        chance = np.where(np.isinf(bench.specimens.fuse), fused, sound)
+        chance = np.where(np.isinf(view.specimens.fuse), fused, sound)
         others = [word for word in READING_KINDS[what].words if word != WORD[what]]
         return Shown(chances={WORD[what]: chance, **dict.fromkeys(others, (1.0 - chance) / 2.0)})
 

@@ -8,61 +8,32 @@ judged in the diagnosis.
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass, field
 
 import numpy as np
 
-from benchtool.board import Board, Unknown, nominal_voltage
+from benchtool.board import Board, nominal_voltage
+from benchtool.catalogue.meters import alternating, misread_junction, ramped
+from benchtool.catalogue.runs import runs
+from benchtool.catalogue.shown import Shown, View
 from benchtool.observed import Check
 from benchtool.physics import branches
 from benchtool.physics import constants as known
-from benchtool.physics.bench import Bench
-from benchtool.physics.laws import Array, Flags, copper_ratio
-from benchtool.physics.network import COIL_WARM_KELVIN
-from benchtool.physics.ripple import UNCERTAIN
+from benchtool.physics.laws import Array, Flags
+from benchtool.physics.settled import Settled
 from benchtool.physics.specimens import Junction, Specimens, Switch
 
-RAIL_ERROR, RAIL_ERROR_FLOOR = 0.008, 0.05
-"""One sigma of the physics on a rail's mean, as a crowd is settled: share, and volts."""
-SAG_ERROR, ROUGH_FROM = 0.4, 0.10
-"""One sigma of the sag that a rough rail's zener makes by clipping the crests, as a share of its ripple over `ROUGH_FROM`."""
-RIPPLE_ERROR, RIPPLE_ERROR_FLOOR = UNCERTAIN, 0.005
-LINE_ERROR = 0.015
+RAIL_ERROR, RAIL_ERROR_FLOOR = 0.003, 0.02
+"""One sigma of the physics on a rail's mean, as a crowd is settled: share, and volts. This and the next two: by what the crowd's
+coarse steps differ from the reference (`python -m tests.compared crowd`).
+"""
+RIPPLE_ERROR, RIPPLE_ERROR_FLOOR = 0.05, 0.01
+LINE_ERROR = 0.01
 UNSOLVED = 0.2
 """One sigma, as a share, of a specimen whose cycle did not repeat."""
-RAMP_SECONDS = 0.3
-"""Longest window of meters that ramp at constant current; common practice, no source. Half of all meters do not ramp."""
 SURE = 0.96
 """Chance that a test in words gives the true word."""
 
-
-@dataclass(frozen=True, slots=True)
-class Shown:
-    """What a reading shows. Numbers: `value`, `error` (one sigma of the physics), (n,), with words by `opened`, `shorted`.
-
-    Words only: `chances`, word → (n,), adding up to one.
-    """
-
-    value: Array | None = None
-    error: Array | float = 0.0
-    opened: Flags | None = None
-    shorted: Flags | None = None
-    chances: dict[str, Array] = field(default_factory=dict)
-
-
-Shows = Callable[[Bench, Board, Check], Shown]
-
-
-def _rail(board: Board, check: Check) -> int:
-    return board.rail_index(check.rail or board.rails[0].name)
-
-
-def _load(board: Board, check: Check) -> int:
-    return [load.name for load in board.loads].index(check.load or "")
-
-
-def _warm(check: Check) -> bool:
-    return check.when == "warm"
+Shows = Callable[[View], Shown]
 
 
 def _resistance(value: Array, error: float = 0.0) -> Shown:
@@ -74,104 +45,69 @@ def _finite(value: Array) -> Array:
     return np.where(np.isfinite(value), value, 0.0)
 
 
-def _mains(bench: Bench, board: Board, check: Check) -> Shown:
-    return Shown(bench.specimens.mains)
+def _mains(view: View) -> Shown:
+    return Shown(view.specimens.mains)
 
 
-def _rail_voltage(bench: Bench, board: Board, check: Check) -> Shown:
-    settled, index = bench.settled(check.on, warm=_warm(check)), _rail(board, check)
-    value, ripple = settled.rail_voltage[index], settled.ripple_pp[index]
-    clips = settled.zener_current[index] > known.REGULATES_FROM
-    rough = np.where(clips, np.maximum(ripple - ROUGH_FROM * np.abs(value), 0.0), 0.0)
-    unsolved = np.where(settled.converged, 0.0, UNSOLVED * np.abs(value))
-    return Shown(value, np.hypot(RAIL_ERROR * np.abs(value) + RAIL_ERROR_FLOOR, SAG_ERROR * rough) + unsolved)
+def _rail_voltage(view: View) -> Shown:
+    """A DC range shows the mean, whatever ripple stands on it."""
+    settled, index = view.settled, view.rail
+    value = settled.rail_voltage[index]
+    return Shown(value, RAIL_ERROR * np.abs(value) + RAIL_ERROR_FLOOR + _unsolved(settled, value))
 
 
-def _ripple(bench: Bench, board: Board, check: Check) -> Shown:
-    value = bench.settled(check.on, warm=_warm(check)).ripple_pp[_rail(board, check)]
-    return Shown(value, RIPPLE_ERROR * value + RIPPLE_ERROR_FLOOR)
+def _unsolved(settled: Settled, value: Array) -> Array:
+    """What is added to the error where the cycle did not repeat."""
+    return np.where(settled.converged, 0.0, UNSOLVED * np.abs(value))
 
 
-def _ripple_rms(bench: Bench, board: Board, check: Check) -> Shown:
-    value = bench.settled(check.on, warm=_warm(check)).ripple_rms[_rail(board, check)]
-    return Shown(value, RIPPLE_ERROR * value + RIPPLE_ERROR_FLOOR / 2.0)
+def _ripple(view: View) -> Shown:
+    settled = view.settled
+    value = settled.ripple_pp[view.rail]
+    return Shown(value, RIPPLE_ERROR * value + RIPPLE_ERROR_FLOOR + _unsolved(settled, value))
 
 
-def _line_current(bench: Bench, board: Board, check: Check) -> Shown:
-    value = bench.settled(check.on, warm=_warm(check)).line_current
+def _ripple_rms(view: View) -> Shown:
+    settled = view.settled
+    value = alternating(view, settled.ripple_rms[view.rail], settled.ripple_average[view.rail])
+    return Shown(value, RIPPLE_ERROR * value + RIPPLE_ERROR_FLOOR / 3.0 + _unsolved(settled, value))
+
+
+def _line_current(view: View) -> Shown:
+    value = _line(view)
     return Shown(value, LINE_ERROR * value)
 
 
-def _inrush_voltage(bench: Bench, board: Board, check: Check) -> Shown:
+def _line(view: View) -> Array:
+    """The current in the mains lead [A] as the meter shows it, (n,)."""
+    settled = view.settled
+    return alternating(view, settled.line_current, settled.line_average)
+
+
+def _inrush_voltage(view: View) -> Shown:
     """An open inrush resistor stands between the mains and a dropper that passes nothing: the whole mains are across it."""
-    current = bench.settled(check.on, warm=_warm(check)).line_current
-    resistance = bench.specimens.inrush
-    across = np.isinf(resistance) & np.isfinite(bench.specimens.fuse + bench.specimens.joint)
-    value = np.where(across, bench.specimens.mains, current * np.where(np.isinf(resistance), 0.0, resistance))
+    current = _line(view)
+    resistance = view.specimens.inrush
+    across = np.isinf(resistance) & np.isfinite(view.specimens.fuse + view.specimens.joint)
+    value = np.where(across, view.specimens.mains, current * np.where(np.isinf(resistance), 0.0, resistance))
     return Shown(value, LINE_ERROR * value + np.where(across, 0.2 * value, 0.0))
 
 
-def _dropper_voltage(bench: Bench, board: Board, check: Check) -> Shown:
-    value = bench.settled(check.on, warm=_warm(check)).dropper_voltage
+def _dropper_voltage(view: View) -> Shown:
+    settled = view.settled
+    value = alternating(view, settled.dropper_voltage, settled.dropper_average)
     return Shown(value, LINE_ERROR * value + 1.0)
 
 
-def _dropper_dc(bench: Bench, board: Board, check: Check) -> Shown:
-    value = bench.settled(check.on, warm=_warm(check)).dropper_dc
+def _dropper_dc(view: View) -> Shown:
+    value = view.settled.dropper_dc
     return Shown(value, 0.05 * value + 0.5)
 
 
-def runs(bench: Bench, board: Board, load: int, on: tuple[str, ...], *, warm: bool = False) -> tuple[Array, Array]:
-    """Chance that load `load` runs with the loads `on` commanded on, itself among them, and that it runs unasked, each (n,).
-
-    A switched load needs the controller alive, its transistor and voltage enough; see the case format's section 4.
-    """
-    specimens, record = bench.specimens, board.loads[load]
-    enough_on = _enough(bench, board, load, on, warm)
-    if not record.switched:
-        return enough_on, np.zeros(specimens.count)
-    switch = specimens.switch[load]
-    lives = _controller_lives(bench, board, on, warm)
-    stuck = switch == Switch.STUCK
-    meant_chance = np.where(stuck, enough_on, np.where(switch == Switch.OPEN, 0.0, enough_on * lives))
-    return meant_chance, np.where(stuck, _enough(bench, board, load, (), warm), 0.0)
-
-
-def _enough(bench: Bench, board: Board, load: int, on: tuple[str, ...], warm: bool) -> Array:
-    """Whether the load gets voltage enough to act in the troughs of the ripple too, 0 or 1, (n,)."""
-    specimens, record = bench.specimens, board.loads[load]
-    settled = bench.settled(on, warm=warm)
-    voltage = settled.load_voltage[load] - settled.ripple_pp[board.rail_index(record.rail)] / 2.0
-    intact = specimens.load_open[load] == 0.0
-    if record.kind == "coil":
-        nominal = record.nominal_voltage or float(nominal_voltage(board, board.rail(record.rail)) or 0.0)
-        pull_in = specimens.pull_in[load] * nominal * (float(copper_ratio(25.0 + COIL_WARM_KELVIN)) if warm else 1.0)
-        return np.asarray(intact & (voltage >= pull_in), dtype=float)
-    if record.kind == "led":
-        return np.asarray(intact & (voltage >= known.LED_LIGHTS_FROM * specimens.load_forward[load]), dtype=float)
-    return np.asarray(intact & (voltage >= _alive_from(board, board.rail_index(record.rail))), dtype=float)
-
-
-def _alive_from(board: Board, rail: int) -> float:
-    """Volts on rail `rail` above which a controller lives."""
-    zener = board.rails[rail].zener
-    if zener is None or isinstance(zener.voltage, Unknown):
-        return known.LIVES_FROM_VOLTS
-    return min(known.LIVES_FROM_SHARE * zener.voltage, known.LIVES_FROM_VOLTS)
-
-
-def _controller_lives(bench: Bench, board: Board, on: tuple[str, ...], warm: bool) -> Array:
-    controllers = [load for load in board.loads if load.kind == "current"]
-    if not controllers:
-        return np.ones(bench.specimens.count)
-    index = board.rail_index(controllers[0].rail)
-    return np.asarray(bench.settled(on, warm=warm).rail_voltage[index] >= _alive_from(board, index), dtype=float)
-
-
-def _responds(bench: Bench, board: Board, check: Check) -> Shown:
-    load = _load(board, check)
-    on = (board.loads[load].name,) if board.loads[load].switched else ()
-    when_meant, when_not = runs(bench, board, load, on, warm=_warm(check))
+def _responds(view: View) -> Shown:
+    load = view.load
+    on = (view.board.loads[load].name,) if view.board.loads[load].switched else ()
+    when_meant, when_not = runs(view.bench, view.board, load, on, warm=view.warm)
     always = when_not * SURE
     yes = when_meant * (1.0 - when_not) * SURE
     rest = 1.0 - always - yes
@@ -179,54 +115,53 @@ def _responds(bench: Bench, board: Board, check: Check) -> Shown:
     return Shown(chances={"yes": yes, "always on": always, "no": rest - 2.0 * weak, "chatters": weak, "lets go": weak})
 
 
-def _dropper_capacitance(bench: Bench, board: Board, check: Check) -> Shown:
-    """Across the bleeder a meter that ramps reads high by x/(1 − e^−x), x = window/RC; half of all meters do not ramp."""
-    specimens = bench.specimens
+def _dropper_capacitance(view: View) -> Shown:
+    specimens = view.specimens
     value = specimens.capacitance
-    if not check.lifted:
-        window = RAMP_SECONDS * np.maximum(2.0 * bench.chance() - 1.0, 0.0)
-        x = np.clip(window / np.maximum(specimens.bleeder * value, 1e-12), 1e-9, 50.0)
-        value = value * np.where(np.isinf(specimens.bleeder), 1.0, x / -np.expm1(-x))
-    mark = board.dropper.capacitance
+    if not view.check.lifted:
+        value = ramped(value, specimens.bleeder, view.bench.chance())
+    mark = view.board.dropper.capacitance
     floor = 0.02 * mark if isinstance(mark, float) else 1e-9
     shorted = np.isfinite(specimens.dropper_short)
     return Shown(np.where(shorted, np.inf, value), opened=specimens.capacitance < floor, shorted=shorted)
 
 
-def _shunt_capacitance(bench: Bench, board: Board, check: Check) -> Shown:
-    value, mark = bench.specimens.shunt, board.dropper.shunt_capacitance
+def _shunt_capacitance(view: View) -> Shown:
+    value, mark = view.specimens.shunt, view.board.dropper.shunt_capacitance
     floor = 0.02 * mark if isinstance(mark, float) else 1e-9
-    shorted = np.isfinite(bench.specimens.shunt_short)
+    shorted = np.isfinite(view.specimens.shunt_short)
     return Shown(np.where(shorted, np.inf, value), opened=value < floor, shorted=shorted)
 
 
-def _fuse(bench: Bench, board: Board, check: Check) -> Shown:
-    cold = 0.2 + bench.specimens.fuse
+def _fuse(view: View) -> Shown:
+    cold = 0.2 + view.specimens.fuse
     return Shown(cold, 0.2, opened=np.isinf(cold))
 
 
-def _varistor(bench: Bench, board: Board, check: Check) -> Shown:
-    value = bench.specimens.varistor
+def _varistor(view: View) -> Shown:
+    value = view.specimens.varistor
     return Shown(value, 0.05 * _finite(value), opened=np.isinf(value), shorted=value < 50.0)
 
 
-def _path(bench: Bench, board: Board, check: Check) -> Shown:
-    return _resistance(bench.specimens.series_resistance + 0.3, 0.002)
+def _path(view: View) -> Shown:
+    return _resistance(view.specimens.series_resistance + 0.3, 0.002)
 
 
-def _inrush(bench: Bench, board: Board, check: Check) -> Shown:
-    return _resistance(bench.specimens.inrush)
+def _inrush(view: View) -> Shown:
+    return _resistance(view.specimens.inrush)
 
 
-def _bleeder(bench: Bench, board: Board, check: Check) -> Shown:
-    return _resistance(bench.specimens.bleeder)
+def _bleeder(view: View) -> Shown:
+    return _resistance(view.specimens.bleeder)
 
 
-def _rectifier(bench: Bench, board: Board, check: Check) -> Shown:
-    state = bench.specimens.junction
+def _rectifier(view: View) -> Shown:
+    state = view.specimens.junction
     opened = (state == Junction.SERIES_OPEN) | (state == Junction.RETURN_OPEN)
     shorted = (state == Junction.SERIES_SHORT) | (state == Junction.RETURN_SHORT)
-    return _three_words(opened, shorted, ("good", "open", "short"))
+    shown = _three_words(opened, shorted, ("good", "open", "short")).chances
+    misread = shown["good"] * misread_junction(view)
+    return Shown(chances={**shown, "good": shown["good"] - misread, "short": shown["short"] + misread})
 
 
 def _three_words(second: Flags, third: Flags, words: tuple[str, str, str]) -> Shown:
@@ -236,28 +171,28 @@ def _three_words(second: Flags, third: Flags, words: tuple[str, str, str]) -> Sh
     return Shown(chances={word: np.where(flag, SURE, doubt) for word, flag in zip(words, flags, strict=True)})
 
 
-def _feed(bench: Bench, board: Board, check: Check) -> Shown:
-    return _resistance(bench.specimens.feed[_rail(board, check)])
+def _feed(view: View) -> Shown:
+    return _resistance(view.specimens.feed[view.rail])
 
 
-def _zener(bench: Bench, board: Board, check: Check) -> Shown:
-    index = _rail(board, check)
-    short, voltage = bench.specimens.zener_short[index], bench.specimens.zener[index]
+def _zener(view: View) -> Shown:
+    index = view.rail
+    short, voltage = view.specimens.zener_short[index], view.specimens.zener[index]
     shorted = np.isfinite(short)
     value = np.where(shorted, np.minimum(known.ZENER_CURRENT * short, voltage), voltage)
     return Shown(value, 0.01 * _finite(value), opened=np.isinf(value), shorted=shorted)
 
 
-def _reservoir(bench: Bench, board: Board, check: Check) -> Shown:
-    index = _rail(board, check)
-    value, healthy = bench.specimens.reservoir[index], board.rails[index].reservoir
+def _reservoir(view: View) -> Shown:
+    index = view.rail
+    value, healthy = view.specimens.reservoir[index], view.board.rails[index].reservoir
     mark = healthy.capacitance if healthy is not None else None
     floor = 0.01 * mark if isinstance(mark, float) else 1e-9
-    return Shown(value, 0.02 * value, opened=value < floor, shorted=bench.specimens.reservoir_leak[index] < 20.0)
+    return Shown(value, 0.02 * value, opened=value < floor, shorted=view.specimens.reservoir_leak[index] < 20.0)
 
 
-def _esr(bench: Bench, board: Board, check: Check) -> Shown:
-    value = bench.specimens.esr[_rail(board, check)]
+def _esr(view: View) -> Shown:
+    value = view.specimens.esr[view.rail]
     return Shown(value, 0.05 * _finite(value), opened=value > 1e3)
 
 
@@ -265,22 +200,23 @@ def _test_volts(board: Board, index: int, share: float) -> float:
     return share * (nominal_voltage(board, board.rails[index]) or 12.0)
 
 
-def _reservoir_leakage(bench: Bench, board: Board, check: Check) -> Shown:
+def _reservoir_leakage(view: View) -> Shown:
     """A sound electrolytic leaks a fraction of its limit 0.01·C·V or 3 µA (Panasonic NHG)."""
-    index = _rail(board, check)
-    volts = _test_volts(board, index, 0.8)
-    sound = np.maximum(0.002 * bench.specimens.reservoir[index] * volts, 1e-6)
-    return Shown(volts / bench.specimens.reservoir_leak[index] + sound, 0.5 * sound)
+    index = view.rail
+    volts = _test_volts(view.board, index, 0.8)
+    sound = np.maximum(0.002 * view.specimens.reservoir[index] * volts, 1e-6)
+    return Shown(volts / view.specimens.reservoir_leak[index] + sound, 0.5 * sound)
 
 
-def _rail_leakage(bench: Bench, board: Board, check: Check) -> Shown:
-    index = _rail(board, check)
-    volts = _test_volts(board, index, 0.8)
-    specimens, shape = bench.specimens, bench.specimens.shape
+def _rail_leakage(view: View) -> Shown:
+    index = view.rail
+    volts = _test_volts(view.board, index, 0.8)
+    specimens, shape = view.specimens, view.specimens.shape
     alone = shape.rails[index].clamps_to < 0 and not (index == 0 and shape.zener_at_node)
     through = np.zeros(specimens.count)
     if alone:
-        through, _ = branches.zener(np.full(specimens.count, volts), specimens.zener[index], specimens.zener_short[index])
+        through, _ = branches.zener(np.full(specimens.count, volts), specimens.zener[index])
+        through = through + volts / specimens.zener_short[index]
     value = volts / specimens.board_leak[index] + np.minimum(through, 1.0)
     return Shown(value, 0.05 * value + 5e-6)
 
@@ -293,7 +229,7 @@ INJECTION_UNKNOWN = 12.0
 
 def injection_limits(board: Board, check: Check) -> tuple[float, float]:
     """Current [A] and voltage [V] limit of a rail-injection, as stated or by default, never above the reservoir's rating."""
-    rail = board.rails[_rail(board, check)]
+    rail = board.rails[0] if check.rail is None else board.rail(check.rail)
     nominal = nominal_voltage(board, rail)
     limit = check.limit or (INJECTION_UNKNOWN if nominal is None else INJECTION_OVER * nominal)
     rated = None if rail.reservoir is None else rail.reservoir.rated_voltage
@@ -301,20 +237,20 @@ def injection_limits(board: Board, check: Check) -> tuple[float, float]:
     return check.clamp or INJECTION_CLAMP, limit
 
 
-def _injection(bench: Bench, board: Board, check: Check) -> Shown:
-    clamp, limit = injection_limits(board, check)
-    volts = bench.injected(check.on or (), _rail(board, check), clamp, limit)
+def _injection(view: View) -> Shown:
+    clamp, limit = injection_limits(view.board, view.check)
+    volts = view.bench.injected(view.check.on or (), view.rail, clamp, limit)
     solved = np.isfinite(volts)
     value = np.where(solved, volts, limit / 2.0)
     return Shown(value, 0.003 * value + 0.02 + np.where(solved, 0.0, limit))
 
 
-def _load_current(bench: Bench, board: Board, check: Check) -> Shown:
+def _load_current(view: View) -> Shown:
     """From a bench supply at 90 % of the rail's voltage, across the load itself."""
-    number = _load(board, check)
-    load, specimens = board.loads[number], bench.specimens
-    foot = 0.0 if load.returns_to == "common" else _test_volts(board, board.rail_index(load.returns_to), 0.9)
-    voltage = np.full(specimens.count, max(_test_volts(board, board.rail_index(load.rail), 0.9) - foot, 0.0))
+    number = view.load
+    load, specimens = view.board.loads[number], view.specimens
+    foot = 0.0 if load.returns_to == "common" else _test_volts(view.board, view.board.rail_index(load.returns_to), 0.9)
+    voltage = np.full(specimens.count, max(_test_volts(view.board, view.board.rail_index(load.rail), 0.9) - foot, 0.0))
     drawn = _branch(specimens, number, voltage) + voltage * specimens.load_excess[number]
     return Shown(np.where(specimens.load_open[number] == 0.0, drawn, 0.0), 0.02 * drawn)
 
@@ -328,21 +264,21 @@ def _branch(specimens: Specimens, number: int, voltage: Array) -> Array:
     return branches.resistor(voltage, specimens.load_resistance[number])[0]
 
 
-def _coil(bench: Bench, board: Board, check: Check) -> Shown:
-    number = _load(board, check)
-    specimens = bench.specimens
+def _coil(view: View) -> Shown:
+    number = view.load
+    specimens = view.specimens
     value = np.where(specimens.load_open[number] > 0.0, np.inf, specimens.load_resistance[number])
     return _resistance(value, 0.005)
 
 
-def _switch(bench: Bench, board: Board, check: Check) -> Shown:
-    state = bench.specimens.switch[_load(board, check)]
+def _switch(view: View) -> Shown:
+    state = view.specimens.switch[view.load]
     return _three_words(np.asarray(state == Switch.OPEN), np.asarray(state == Switch.STUCK), ("good", "open", "short"))
 
 
-def _tap(bench: Bench, board: Board, check: Check) -> Shown:
+def _tap(view: View) -> Shown:
     """A bad joint mostly shows itself when it is pressed; whether it then cuts out or comes back is an even chance."""
-    bad = np.isinf(bench.specimens.joint) | np.isinf(bench.specimens.rail_joint).any(axis=0)
+    bad = np.isinf(view.specimens.joint) | np.isinf(view.specimens.rail_joint).any(axis=0)
     stirs = np.where(bad, 0.7, 0.03)
     return Shown(chances={"no change": 1.0 - stirs, "cuts out": stirs / 2.0, "comes back": stirs / 2.0})
 

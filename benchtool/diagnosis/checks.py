@@ -14,7 +14,8 @@ import numpy as np
 from benchtool.board import Board
 from benchtool.catalogue.accepted import lacking
 from benchtool.catalogue.readings import READING_KINDS, READINGS, ReadingKind
-from benchtool.catalogue.shows import SHOWS, Shown
+from benchtool.catalogue.shown import Shown, View
+from benchtool.catalogue.shows import SHOWS
 from benchtool.diagnosis.likelihood import LOGARITHMIC, SMALLEST, spread, word_chance
 from benchtool.diagnosis.posterior import ELSEWHERE, Posterior
 from benchtool.observed import Check, Meter
@@ -127,7 +128,7 @@ class _Weigher:
         """Expected information about the hypothesis [bit]."""
         board, meter = self._posterior.board, self._posterior.meter
         kind = READING_KINDS[check.what]
-        shown = [SHOWS[check.what](item.bench, board, check) for item in self._evidence]
+        shown = [SHOWS[check.what](View(item.bench, board, check, meter)) for item in self._evidence]
         if kind.unit is None:
             return self._gain(_word_table(shown, self._shares, kind.words))
         return self._gain(_number_table(shown, self._shares, kind, meter))

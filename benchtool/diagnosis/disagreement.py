@@ -9,6 +9,7 @@ from itertools import combinations
 import numpy as np
 
 from benchtool.catalogue.readings import READING_KINDS
+from benchtool.catalogue.shown import View
 from benchtool.catalogue.shows import SHOWS
 from benchtool.diagnosis.likelihood import LEAST
 from benchtool.diagnosis.posterior import Evidence, Posterior, log_sum
@@ -30,15 +31,16 @@ class Disagreement:
 
 def disagreements(posterior: Posterior) -> tuple[Disagreement, ...]:
     """Every pair of readings that no single fault reconciles."""
-    singles = [item.first for item in posterior.evidence if len(item.hypothesis.faults) < 2]
-    return tuple(_found(posterior, singles))
+    singles = [item for item in posterior.evidence if len(item.hypothesis.faults) < 2]
+    return tuple(_found(posterior, [item.first for item in singles], [item for item in singles if item.wide is not None]))
 
 
-def _found(posterior: Posterior, singles: list[Evidence]) -> Iterator[Disagreement]:
+def _found(posterior: Posterior, singles: list[Evidence], closer: list[Evidence]) -> Iterator[Disagreement]:
+    """`closer`: hypotheses drawn again around the readings, where two sharp ones may meet between the first specimens."""
     uniform, readings = posterior.uniform, posterior.readings
     if len(readings) < 2:
         return
-    together = np.max([_log_pairs(item) for item in singles], axis=0)
+    together = np.max([_log_pairs(item) for item in (*singles, *closer)], axis=0)
     alone = np.max([_log_singles(item) for item in singles], axis=0)
     for first, second in combinations(range(len(readings)), 2):
         possible = alone[first] > uniform[first] and alone[second] > uniform[second]
@@ -69,7 +71,7 @@ def _implied(posterior: Posterior, singles: list[Evidence], first: int, second: 
     if READING_KINDS[reading.what].unit is None or not isinstance(reading.value, float):
         return None
     likeliest = max(singles, key=lambda item: np.log(item.hypothesis.weight) + _log_alone(item, first))
-    shown = SHOWS[reading.what](likeliest.bench, posterior.board, reading.check).value
+    shown = SHOWS[reading.what](View(likeliest.bench, posterior.board, reading.check, posterior.meter)).value
     assert shown is not None
     weights = np.exp(np.maximum(likeliest.densities[first] + likeliest.log_prior, LEAST))
     return weighted_range(np.where(np.isfinite(shown), shown, np.nan), weights)

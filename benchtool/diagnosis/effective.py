@@ -14,6 +14,7 @@ import numpy as np
 
 from benchtool.board import Board, nominal_voltage
 from benchtool.catalogue.readings import READING_KINDS
+from benchtool.catalogue.shown import View
 from benchtool.catalogue.shows import LINE_ERROR, RAIL_ERROR, SHOWS
 from benchtool.diagnosis.likelihood import accuracy_of
 from benchtool.diagnosis.posterior import reading_population
@@ -148,7 +149,7 @@ class _Solver:
         regulates = regulating(self.bench.settled(reading.on, warm=reading.when == "warm"), 0)
         if regulates is None or float(np.mean(regulates)) < MOSTLY:
             return "below"
-        shown = SHOWS[reading.what](self.bench, self.board, reading.check).value
+        shown = SHOWS[reading.what](View(self.bench, self.board, reading.check, self.meter)).value
         assert shown is not None
         assert isinstance(reading.value, float)
         slack = self._two_sigma(reading.check, reading.value)

@@ -9,7 +9,9 @@ import numpy as np
 
 from benchtool.board import Board, Rail, nominal_voltage
 from benchtool.catalogue.readings import READING_KINDS
-from benchtool.catalogue.shows import SHOWS, Shown, runs
+from benchtool.catalogue.runs import runs
+from benchtool.catalogue.shown import Shown, View
+from benchtool.catalogue.shows import SHOWS
 from benchtool.diagnosis.likelihood import accuracy_of
 from benchtool.diagnosis.posterior import Evidence, log_sum
 from benchtool.observed import Accuracy, Check, Meter, Reading
@@ -54,7 +56,7 @@ def expected(bench: Bench, board: Board, check: Check, meter: Meter) -> Expected
     """What `check` should show on the specimens of `bench`, the meter's own inaccuracy included."""
     if check.what == "look":
         return Expected(words=("weak evidence, never proof",))
-    shown = SHOWS[check.what](bench, board, check)
+    shown = SHOWS[check.what](View(bench, board, check, meter))
     if shown.value is None:
         return Expected(words=_words(shown.chances))
     for flag, word in ((shown.opened, "open"), (shown.shorted, "short")):

@@ -12,7 +12,8 @@ from benchtool.board import Board
 from benchtool.catalogue.accepted import accepted
 from benchtool.catalogue.faults import SOUND_OTHER, SOUND_SIGNS
 from benchtool.catalogue.readings import LOOK_WORDS, READING_KINDS, ReadingKind
-from benchtool.catalogue.shows import SURE, Shown
+from benchtool.catalogue.shown import Shown
+from benchtool.catalogue.shows import SURE
 from benchtool.diagnosis.hypotheses import Hypothesis
 from benchtool.observed import Accuracy, Meter, Reading, ReadingValue
 from benchtool.physics.laws import Array, two_sigma

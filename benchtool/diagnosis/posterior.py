@@ -15,6 +15,7 @@ import numpy as np
 from benchtool.board import Board
 from benchtool.catalogue.faults import UNEXPLAINED_WEIGHT
 from benchtool.catalogue.readings import READING_KINDS
+from benchtool.catalogue.shown import View
 from benchtool.catalogue.shows import SHOWS
 from benchtool.catalogue.strikes import scene_of
 from benchtool.diagnosis.hypotheses import Hypothesis, hypotheses_of
@@ -26,7 +27,7 @@ from benchtool.physics.laws import Array, two_sigma
 from benchtool.physics.sequence import OTHER_SEVERITY, SECOND_SEVERITY, SEVERITY, coordinate
 from benchtool.physics.specimens import Specimens, concatenate, population_near
 
-DRAWN = 384
+DRAWN = 256
 """Specimens a hypothesis."""
 REDRAWN = 1024
 LEADS_FROM = 0.005
@@ -240,7 +241,7 @@ class _Judge:
         for row, reading in enumerate(self.readings):
             if reading.what in ("look", "mains-voltage"):
                 continue
-            rows[row] = log_density(SHOWS[reading.what](bench, self.board, reading.check), reading, self.meter)
+            rows[row] = log_density(SHOWS[reading.what](View(bench, self.board, reading.check, self.meter)), reading, self.meter)
         return rows
 
     def _evidence(self, hypothesis: Hypothesis, bench: Bench, densities: Array, level: Array) -> Evidence:

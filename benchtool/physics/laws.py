@@ -15,6 +15,9 @@ Array = NDArray[np.float64]
 Flags = NDArray[np.bool_]
 Number = float | Array
 
+AVERAGE_RESPONDING = float(np.pi / (2.0 * np.sqrt(2.0)))
+"""What a meter that responds to the mean magnitude multiplies it by: RMS over mean magnitude of a sine [1]. Definition."""
+
 
 def reactance(capacitance: Number, frequency: Number) -> Array:
     """Reactance 1/(2πfC) [ohm] of `capacitance` [F] at `frequency` [Hz]. Definition."""

@@ -15,7 +15,8 @@ class Settled:
     rail_voltage (rails, n) [V]; ripple_pp, ripple_rms (rails, n) [V] at the rail's terminals, ESR included; zener_current
     (rails, n) [A], mean reverse; zener_power (rails, n) [W]; supply_current [A] out of the rectifier into the first rail;
     line_current [A RMS]; real_power [W]; dropper_voltage [V RMS] without its DC; dropper_dc [V], magnitude; load_voltage,
-    load_current (loads, n) [V, A]; converged: whether this specimen's cycle repeats.
+    load_current (loads, n) [V, A]; line_average, dropper_average, ripple_average: line_current, dropper_voltage and ripple_rms
+    as an average-responding meter shows them; converged: whether this specimen's cycle repeats.
     """
 
     specimens: Specimens
@@ -29,6 +30,9 @@ class Settled:
     real_power: Array
     dropper_voltage: Array
     dropper_dc: Array
+    line_average: Array
+    dropper_average: Array
+    ripple_average: Array
     load_voltage: Array
     load_current: Array
     converged: Flags

@@ -1,0 +1,59 @@
+"""Whether a load runs: what `load-responds` shows, and what a complaint is about."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from benchtool.board import Board, Unknown, nominal_voltage
+from benchtool.physics import constants as known
+from benchtool.physics.bench import Bench
+from benchtool.physics.laws import Array, copper_ratio
+from benchtool.physics.network import COIL_WARM_KELVIN
+from benchtool.physics.specimens import Switch
+
+
+def runs(bench: Bench, board: Board, load: int, on: tuple[str, ...], *, warm: bool = False) -> tuple[Array, Array]:
+    """Chance that load `load` runs with the loads `on` commanded on, itself among them, and that it runs unasked, each (n,).
+
+    A switched load needs the controller alive, its transistor and voltage enough; see the case format's section 4.
+    """
+    specimens, record = bench.specimens, board.loads[load]
+    enough_on = _enough(bench, board, load, on, warm)
+    if not record.switched:
+        return enough_on, np.zeros(specimens.count)
+    switch = specimens.switch[load]
+    lives = _controller_lives(bench, board, on, warm)
+    stuck = switch == Switch.STUCK
+    meant_chance = np.where(stuck, enough_on, np.where(switch == Switch.OPEN, 0.0, enough_on * lives))
+    return meant_chance, np.where(stuck, _enough(bench, board, load, (), warm), 0.0)
+
+
+def _enough(bench: Bench, board: Board, load: int, on: tuple[str, ...], warm: bool) -> Array:
+    """Whether the load gets voltage enough to act in the troughs of the ripple too, 0 or 1, (n,)."""
+    specimens, record = bench.specimens, board.loads[load]
+    settled = bench.settled(on, warm=warm)
+    voltage = settled.load_voltage[load] - settled.ripple_pp[board.rail_index(record.rail)] / 2.0
+    intact = specimens.load_open[load] == 0.0
+    if record.kind == "coil":
+        nominal = record.nominal_voltage or float(nominal_voltage(board, board.rail(record.rail)) or 0.0)
+        pull_in = specimens.pull_in[load] * nominal * (float(copper_ratio(25.0 + COIL_WARM_KELVIN)) if warm else 1.0)
+        return np.asarray(intact & (voltage >= pull_in), dtype=float)
+    if record.kind == "led":
+        return np.asarray(intact & (voltage >= known.LED_LIGHTS_FROM * specimens.load_forward[load]), dtype=float)
+    return np.asarray(intact & (voltage >= _alive_from(board, board.rail_index(record.rail))), dtype=float)
+
+
+def _alive_from(board: Board, rail: int) -> float:
+    """Volts on rail `rail` above which a controller lives."""
+    zener = board.rails[rail].zener
+    if zener is None or isinstance(zener.voltage, Unknown):
+        return known.LIVES_FROM_VOLTS
+    return min(known.LIVES_FROM_SHARE * zener.voltage, known.LIVES_FROM_VOLTS)
+
+
+def _controller_lives(bench: Bench, board: Board, on: tuple[str, ...], warm: bool) -> Array:
+    controllers = [load for load in board.loads if load.kind == "current"]
+    if not controllers:
+        return np.ones(bench.specimens.count)
+    index = board.rail_index(controllers[0].rail)
+    return np.asarray(bench.settled(on, warm=warm).rail_voltage[index] >= _alive_from(board, index), dtype=float)
