@@ -1,12 +1,14 @@
 """Circuits of the reference as specimens of the product, and the product's figures beside the reference's.
 
 The circuits' part values come from the reference, faults folded in (`faulty_values`); what is no value of a part, an open or a
-shorted junction, an open path, is put into the specimen here. `python -m tests.compared` prints the table.
+shorted junction, an open path, is put into the specimen here. `python -m tests.compared` prints the table, and with `crowd` that
+of the crowd's coarser steps.
 """
 
 from __future__ import annotations
 
 import json
+import sys
 from collections.abc import Iterator
 from dataclasses import dataclass, replace
 from pathlib import Path
@@ -17,7 +19,7 @@ import numpy as np
 from benchtool.casefile import loads
 from benchtool.physics.settled import Settled
 from benchtool.physics.specimens import Junction, Specimens, as_marked
-from benchtool.physics.waveform import settle
+from benchtool.physics.waveform import CROWD, FIGURES, Effort, settle
 from tests.reference.circuits import to_case_text
 from tests.reference.faults import faulty_values
 
@@ -112,15 +114,15 @@ def _shunted(specimens: Specimens, start: str, end: str, ohms: float, index: Any
     return _set(specimens, "zener_short", index(start), ohms)
 
 
-def rows(circuits: list[Circuit], expected: list[dict[str, Any]]) -> list[Row]:
+def rows(circuits: list[Circuit], expected: list[dict[str, Any]], effort: Effort = FIGURES) -> list[Row]:
     """Every figure of every circuit."""
-    return [row for circuit, there in zip(circuits, expected, strict=True) for row in _rows(circuit, there)]
+    return [row for circuit, there in zip(circuits, expected, strict=True) for row in _rows(circuit, there, effort)]
 
 
-def _rows(circuit: Circuit, there: dict[str, Any]) -> Iterator[Row]:
+def _rows(circuit: Circuit, there: dict[str, Any], effort: Effort) -> Iterator[Row]:
     assert there["settled"], circuit["name"]
     specimens, on = specimen_of(circuit)
-    settled = settle(specimens, on)
+    settled = settle(specimens, on, effort=effort)
     board = circuit["board"]
     shape = f"{board['rectifier']}, {board['dropper']['kind']}"
     fault = (circuit.get("fault") or {"fault": "no-fault"})["fault"]
@@ -158,6 +160,7 @@ def table(found: list[Row], by: str) -> Iterator[str]:
 
 
 if __name__ == "__main__":
-    compared = rows(stored("circuits.json"), stored("expected.json"))
-    compared += rows(stored("wide_circuits.json"), stored("wide_expected.json"))
+    wanted = CROWD if sys.argv[1:] == ["crowd"] else FIGURES
+    compared = rows(stored("circuits.json"), stored("expected.json"), wanted)
+    compared += rows(stored("wide_circuits.json"), stored("wide_expected.json"), wanted)
     print("\n".join([*table(compared, "figure"), "", *table(compared, "shape"), "", *table(compared, "fault")]))

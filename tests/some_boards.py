@@ -90,9 +90,9 @@ def draw_few(monkeypatch: pytest.MonkeyPatch, count: int, *, coarse: bool = Fals
         monkeypatch.setattr(mean_value, "MOST_STEPS", 12)
         monkeypatch.setattr(mean_value, "WARMING_STEPS", 1)
         monkeypatch.setattr(budget, "BISECTIONS", 2)
-        monkeypatch.setattr(waveform, "STEPS", 8)
-        monkeypatch.setattr(waveform, "FINE_STEPS", 16)
-        monkeypatch.setattr(waveform, "MOST_CYCLES", 2)
+        rough = waveform.Effort(waveform.Pace(8, 3, 0.1), None, most_cycles=2, share=0.01, volts=0.1)
+        monkeypatch.setattr(waveform, "FIGURES", rough)
+        monkeypatch.setattr(waveform, "CROWD", rough)
 
 
 @cache

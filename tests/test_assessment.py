@@ -186,6 +186,7 @@ def test_the_ticket_names_the_case() -> None:
     assert checked(replace(FULL, ticket=Ticket(number="R-1")))["case"] == "R-1"
 
 
+@pytest.mark.usefixtures("fine")
 def test_a_divided_dropper_gets_a_verdict_of_its_own() -> None:
     dropper = replace(FULL.board.dropper, kind="divider", shunt_capacitance=1e-6)
     found = checked(replace(FULL, board=replace(FULL.board, dropper=dropper)))

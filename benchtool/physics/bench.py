@@ -19,7 +19,7 @@ class Bench:
     """Holds `specimens` and remembers what they settled to in each state asked for.
 
     A part of a bench takes its share of what the whole settled to, so that many hypotheses are solved in one pass. A crowd is
-    settled by its means, which is quick; what is shown as a figure, by its cycle.
+    settled no better than a meter reads it.
     """
 
     def __init__(
@@ -43,8 +43,8 @@ class Bench:
 
     def _settle(self, on: tuple[str, ...], warm: bool) -> Settled:
         if self._whole is None:
-            settle = mean_value.settle if self._crowd else waveform.settle
-            return settle(self.specimens, on, warm=warm)
+            effort = waveform.CROWD if self._crowd else waveform.FIGURES
+            return waveform.settle(self.specimens, on, warm=warm, effort=effort)
         whole = self._whole.settled(on, warm=warm)
         arrays = {name: getattr(whole, name)[..., self._where] for name in SETTLED_ARRAYS}
         return replace(whole, specimens=self.specimens, **arrays)

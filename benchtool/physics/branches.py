@@ -25,18 +25,21 @@ def junction(voltage: Array, at_voltage: Array | float, at_current: float, slope
     """
     steep = slope * np.log(STEEP_LIMIT / at_current)
     over = np.asarray(voltage - at_voltage)
-    current = at_current * np.exp(np.minimum(over, steep) / slope)
-    conductance = current / slope
-    return current + conductance * np.maximum(over - steep, 0.0), conductance
+    current = at_current * np.exp(np.minimum(over, steep) * (1.0 / slope))
+    conductance = current * (1.0 / slope)
+    if np.any(over > steep):
+        current = current + conductance * np.maximum(over - steep, 0.0)
+    return current, conductance
 
 
-def zener(voltage: Array, marked: Array, short: Array) -> Branch:
-    """A zener of `marked` [V] at 5 mA with `short` [ohm] across it; forward it conducts like a diode."""
-    reverse, reverse_slope = junction(voltage, marked, known.ZENER_CURRENT, known.ZENER_SLOPE)
-    fitted = np.isfinite(marked)
+def zener(voltage: Array, marked: Array) -> Branch:
+    """A zener of `marked` [V] at 5 mA; forward it conducts like a diode."""
+    reverse, slope = junction(voltage, marked, known.ZENER_CURRENT, known.ZENER_SLOPE)
+    if not np.any(voltage < 0.0):
+        return reverse, slope
     forward, forward_slope = junction(-voltage, known.DIODE_DROP, known.DIODE_CURRENT, known.DIODE_SLOPE)
-    current = reverse - np.where(fitted, forward, 0.0) + voltage / short
-    return current, reverse_slope + np.where(fitted, forward_slope, 0.0) + 1.0 / short
+    fitted = np.isfinite(marked)
+    return reverse - np.where(fitted, forward, 0.0), slope + np.where(fitted, forward_slope, 0.0)
 
 
 def resistor(voltage: Array, resistance: Array) -> Branch:

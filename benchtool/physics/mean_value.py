@@ -1,8 +1,7 @@
-"""The settled state by mean values: Kirchhoff's current law at every rail, solved by Newton's method for all specimens at once.
+"""The means over a mains cycle: Kirchhoff's current law at every rail, solved by Newton's method for all specimens at once.
 
-Right while the rails are smooth, and quick: the crowds that a diagnosis compares with readings are settled by it. Where a rail is
-not smooth its mean is corrected for the reservoir's sag by an estimate, and the ripple is such an estimate too (`ripple.py`). The
-settled cycle (`waveform.py`), which knows both, starts from here and hands back the same `Settled`.
+Right while the rails are smooth, and quick: the settled cycle (`waveform.py`) starts from here, and the searches for a dropper
+and for a demand, which ask for nothing but means, end here.
 """
 
 from __future__ import annotations
@@ -21,13 +20,10 @@ from benchtool.physics.network import (
     Network,
     across,
     add_loads,
-    add_rails,
-    load_figures,
+    add_regulators,
     network_of,
     rail_zener,
 )
-from benchtool.physics.ripple import ripple_estimate, sagged
-from benchtool.physics.settled import Settled
 from benchtool.physics.shape import TO_COMMON
 from benchtool.physics.specimens import Specimens
 from benchtool.physics.supply import feed_of, mains_side, supply_current
@@ -42,8 +38,6 @@ BALANCED = 1e-8
 STANDS = 1e-7
 """or when no rail moves by more than this any more [V]: a rail may sit on a kink, as at the crest."""
 WARMING_STEPS = 4
-RMS_OF_TRIANGLE = float(np.sqrt(12.0))
-"""Peak to peak over RMS of a triangle, the form of ripple that is estimated."""
 STIFF = 1e3
 """Conductance that holds a rail at a given voltage [S]."""
 
@@ -87,40 +81,6 @@ def means(specimens: Specimens, on: tuple[str, ...], *, warm: bool = False) -> M
     return Means(network, rails, solved)
 
 
-def settle(specimens: Specimens, on: tuple[str, ...], *, warm: bool = False) -> Settled:
-    """The settled state by its means, ripple and sag estimated, with the switched loads `on` commanded on."""
-    found = means(specimens, on, warm=warm)
-    network, rails = found.network, found.rails
-    hot, shape = network.specimens, specimens.shape
-    feed = feed_of(specimens)
-    supply, _ = supply_current(feed, rails[0])
-    zener_current, zener_power = _zeners(hot, rails)
-    if shape.zener_at_node:
-        zener_power[0] += supply * known.DIODE_DROP
-    voltages, currents = load_figures(network, rails, mean_pulses(specimens))
-    side = mains_side(feed, rails[0])
-    ripple = ripple_estimate(hot, rails, supply, zener_current)
-    rectified = supply * (rails[0] + 2.0 * known.DIODE_DROP)
-    series = np.where(np.isfinite(specimens.series_resistance), specimens.series_resistance, 0.0)
-    over = (side.dropper_voltage**2 + side.dropper_dc**2) / specimens.parallel_resistance
-    return Settled(
-        specimens=specimens,
-        rail_voltage=sagged(rails, ripple, zener_current),
-        ripple_pp=ripple,
-        ripple_rms=ripple / RMS_OF_TRIANGLE,
-        zener_current=zener_current,
-        zener_power=zener_power,
-        supply_current=supply - zener_current[0] if shape.zener_at_node else supply,
-        line_current=side.line_current,
-        real_power=rectified + side.line_current**2 * series + over,
-        dropper_voltage=side.dropper_voltage,
-        dropper_dc=side.dropper_dc,
-        load_voltage=voltages,
-        load_current=currents,
-        converged=found.solved,
-    )
-
-
 def mean_zener(specimens: Specimens, index: int, rails: Array) -> Branch:
     """Mean current [A] through the zener of rail `index` and its slope [S], the rails at `rails` (rails, n) [V].
 
@@ -135,10 +95,11 @@ def mean_zener(specimens: Specimens, index: int, rails: Array) -> Branch:
 
 def balance_at(network: Network, rails: Array, pulsed: tuple[float, ...]) -> Balance:
     """Everything but the source, at `rails` (rails, n) [V]; `pulsed` as in `add_loads`."""
-    balance, specimens = Balance(len(rails)), network.specimens
+    balance, specimens = Balance(network.straight, rails), network.specimens
     for index, rail in enumerate(specimens.shape.rails):
-        balance.branch(index, rail.clamps_to, mean_zener(specimens, index, rails))
-    add_rails(balance, network, rails)
+        if rail.has_zener:
+            balance.branch(index, rail.clamps_to, mean_zener(specimens, index, rails))
+    add_regulators(balance, specimens, rails)
     add_loads(balance, network, rails, pulsed)
     return balance
 
@@ -261,6 +222,6 @@ def _zeners(specimens: Specimens, rails: Array) -> tuple[Array, Array]:
         through, _ = mean_zener(specimens, index, rails)
         at_node = index == 0 and specimens.shape.zener_at_node
         shorted = 0.0 if at_node else voltage / specimens.zener_short[index]
-        current[index] = np.maximum(through - shorted, 0.0)
-        power[index] = np.abs(through * (voltage + (known.DIODE_DROP if at_node else 0.0)))
+        current[index] = np.maximum(through, 0.0)
+        power[index] = np.abs((through + shorted) * (voltage + (known.DIODE_DROP if at_node else 0.0)))
     return current, power

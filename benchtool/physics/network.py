@@ -6,6 +6,7 @@ into it and finds no way out; Newton's method moves the rails until there is non
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -13,7 +14,7 @@ from numpy.typing import NDArray
 
 from benchtool.physics import branches, laws
 from benchtool.physics import constants as known
-from benchtool.physics.laws import Array
+from benchtool.physics.laws import Array, Flags
 from benchtool.physics.shape import TO_COMMON
 from benchtool.physics.specimens import Specimens, Switch, take
 
@@ -21,12 +22,21 @@ COIL_WARM_KELVIN = 60.0
 """What 15 minutes on do to a coil inside a warm appliance: kelvin above the bench; value from memory."""
 
 
-class Balance:
-    """Surplus [A] of every rail and its slopes [S], added up branch by branch; each entry (n,), 0.0 where nothing stands."""
+Matrix = tuple[tuple[Array | float, ...], ...]
+"""Slopes [S] of every rail's surplus against every rail's voltage, each (n,); 0.0 where nothing stands."""
 
-    def __init__(self, rails: int) -> None:
-        self.surplus: list[Array | float] = [0.0] * rails
-        self.slopes: list[list[Array | float]] = [[0.0] * rails for _ in range(rails)]
+
+class Balance:
+    """Surplus [A] of every rail and its slopes [S]: the straight part of the network first, then branch by branch; each (n,)."""
+
+    def __init__(self, straight: Matrix, rails: Array, sources: Sequence[Array | float] = ()) -> None:
+        """`straight` at `rails` (rails, n) [V], with `sources` [A] into each rail that no voltage changes."""
+        self.slopes = [list(row) for row in straight]
+        self.surplus: list[Array | float] = list(sources) or [0.0] * len(straight)
+        for index, row in enumerate(straight):
+            for other, slope in enumerate(row):
+                if not isinstance(slope, float):
+                    self.surplus[index] = self.surplus[index] + slope * rails[other]
 
     def inject(self, rail: int, current: Array, slope: Array) -> None:
         """A source's `current` [A] into `rail`, with its slope against that rail's voltage [S], each (n,)."""
@@ -87,24 +97,64 @@ def _solved(given: list[list[Array | float]], right: list[Array | float]) -> Arr
 
 @dataclass(frozen=True, slots=True)
 class Network:
-    """Specimens in one switched state: `drawing` (loads, n) is true where a load is really connected."""
+    """Specimens in one switched state: `drawing` (loads, n) is true where a load is really connected.
+
+    `straight`: everything that obeys Ohm's law between rails and common; the rest bends and is added at each voltage.
+    """
 
     specimens: Specimens
-    drawing: NDArray[np.bool_]
+    drawing: Flags
     load_resistance: Array
+    straight: Matrix
 
     def part(self, index: NDArray[np.intp] | slice) -> Network:
         """The network of some of the specimens."""
-        return Network(take(self.specimens, index), self.drawing[:, index], self.load_resistance[:, index])
+        straight = tuple(
+            tuple(slope if isinstance(slope, float) else slope[index] for slope in row) for row in self.straight
+        )
+        return Network(take(self.specimens, index), self.drawing[:, index], self.load_resistance[:, index], straight)
 
 
 def network_of(specimens: Specimens, on: tuple[str, ...], warm: bool) -> Network:
     """The network with the switched loads `on` commanded on; `warm` heats the coils."""
     commanded = np.array(specimens.shape.commanded(on), dtype=bool)[:, None]
     drawing = (commanded & (specimens.switch != Switch.OPEN)) | (specimens.switch == Switch.STUCK)
+    drawing = drawing & (specimens.load_open == 0.0)
     ratio = float(laws.copper_ratio(25.0 + COIL_WARM_KELVIN)) if warm else 1.0
     coils = np.array([load.kind == "coil" for load in specimens.shape.loads], dtype=bool)[:, None]
-    return Network(specimens, drawing & (specimens.load_open == 0.0), specimens.load_resistance * np.where(coils, ratio, 1.0))
+    resistance = specimens.load_resistance * np.where(coils, ratio, 1.0)
+    return Network(specimens, drawing, resistance, _straight(specimens, drawing, resistance))
+
+
+def _straight(specimens: Specimens, drawing: Flags, resistance: Array) -> Matrix:
+    """Leaks, meter, shorts, feed resistors, and what is ohmic in the loads."""
+    slopes: list[list[Array | float]] = [[0.0] * len(specimens.shape.rails) for _ in specimens.shape.rails]
+
+    def ohmic(start: int, end: int, conductance: Array) -> None:
+        for here, there in ((start, end), (end, start)):
+            if here != TO_COMMON:
+                slopes[here][here] = slopes[here][here] - conductance
+                if there != TO_COMMON:
+                    slopes[here][there] = slopes[here][there] + conductance
+
+    for index, rail in enumerate(specimens.shape.rails):
+        leaks = 1.0 / specimens.reservoir_leak[index] + 1.0 / specimens.board_leak[index] + 1.0 / known.METER_RESISTANCE
+        ohmic(index, TO_COMMON, leaks)
+        if index > 0 or not specimens.shape.zener_at_node:
+            ohmic(index, rail.clamps_to, 1.0 / specimens.zener_short[index])
+        if rail.fed_through == "resistor":
+            ohmic(rail.parent, index, 1.0 / (specimens.feed[index] + specimens.rail_joint[index]))
+    for index, load in enumerate(specimens.shape.loads):
+        ohmic(load.rail, load.returns_to, load_conductance(specimens, drawing, resistance, index))
+    return tuple(tuple(row) for row in slopes)
+
+
+def with_diagonal(straight: Matrix, slopes: Array) -> Matrix:
+    """`straight` with more slopes [S], (rails, n), of each rail against its own voltage."""
+    return tuple(
+        tuple(slope + slopes[index] if index == other else slope for other, slope in enumerate(row))
+        for index, row in enumerate(straight)
+    )
 
 
 def across(rails: Array, start: int, end: int) -> Array:
@@ -112,39 +162,41 @@ def across(rails: Array, start: int, end: int) -> Array:
     return rails[start] if end == TO_COMMON else np.asarray(rails[start] - rails[end])
 
 
-def load_branch(network: Network, index: int, voltage: Array, pulsed: float = 1.0) -> branches.Branch:
-    """What load `index` draws [A] at `voltage` [V] across it, and the slope [S]; `pulsed`: share of the time its pulse flows."""
-    specimens, kind = network.specimens, network.specimens.shape.loads[index].kind
-    resistance = network.load_resistance[index]
-    if kind == "current":
-        current, slope = branches.constant_current(voltage, specimens.load_current[index])
-    elif kind == "gate":
-        current, slope = branches.constant_current(voltage, specimens.load_current[index] * pulsed)
-    elif kind == "led":
-        current, slope = branches.led(voltage, specimens.load_forward[index], resistance)
-    else:
-        current, slope = branches.resistor(voltage, resistance)
-    drawn = network.drawing[index]
-    excess = specimens.load_excess[index]
-    return np.where(drawn, current + voltage * excess, 0.0), np.where(drawn, slope + excess, 0.0)
+def load_conductance(specimens: Specimens, drawing: Flags, resistance: Array, index: int) -> Array:
+    """What is ohmic in load `index` [S], (n,): an excess, and all of a coil or resistor."""
+    ohmic = specimens.shape.loads[index].kind in ("coil", "resistor")
+    conductance = specimens.load_excess[index] + (1.0 / resistance[index] if ohmic else 0.0)
+    return np.where(drawing[index], conductance, 0.0)
+
+
+def load_curve(network: Network, index: int, voltage: Array, pulsed: float) -> branches.Branch | None:
+    """What bends in load `index`: current [A] at `voltage` [V] across it and slope [S], (n,); None where nothing does.
+
+    `pulsed`: share of the time that a gate pulse flows.
+    """
+    specimens, drawn = network.specimens, network.drawing[index]
+    kind = specimens.shape.loads[index].kind
+    if kind == "led":
+        current, slope = branches.led(voltage, specimens.load_forward[index], network.load_resistance[index])
+        return current * drawn, slope * drawn
+    if kind in ("current", "gate"):
+        flows = pulsed if kind == "gate" else 1.0
+        return branches.constant_current(voltage, specimens.load_current[index] * (drawn * flows))
+    return None
 
 
 def rail_zener(specimens: Specimens, index: int, rails: Array) -> branches.Branch:
-    """Current [A] through the zener of rail `index` and its slope [S], the rails at `rails` (rails, n) [V]; not at the node."""
+    """Current [A] through the zener of rail `index` and its slope [S], the rails at `rails` (rails, n) [V]; a short across it
+    is not in it. Not for a zener at the dropper node.
+    """
     voltage = across(rails, index, specimens.shape.rails[index].clamps_to)
-    return branches.zener(voltage, specimens.zener[index], specimens.zener_short[index])
+    return branches.zener(voltage, specimens.zener[index])
 
 
-def add_rails(balance: Balance, network: Network, rails: Array) -> None:
-    """Leaks, meter and feeds of every rail, the rails at `rails` (rails, n) [V]."""
-    specimens = network.specimens
+def add_regulators(balance: Balance, specimens: Specimens, rails: Array) -> None:
+    """Every regulator, the rails at `rails` (rails, n) [V]."""
     for index, rail in enumerate(specimens.shape.rails):
-        leak = 1.0 / specimens.reservoir_leak[index] + 1.0 / specimens.board_leak[index] + 1.0 / known.METER_RESISTANCE
-        balance.inject(index, -rails[index] * leak, -leak)
-        if rail.fed_through == "resistor":
-            through = specimens.feed[index] + specimens.rail_joint[index]
-            balance.branch(rail.parent, index, branches.resistor(across(rails, rail.parent, index), through))
-        elif rail.fed_through == "regulator":
+        if rail.fed_through == "regulator":
             _add_regulator(balance, specimens, rail.parent, index, rails)
 
 
@@ -162,16 +214,21 @@ def _add_regulator(balance: Balance, specimens: Specimens, parent: int, index: i
 
 
 def add_loads(balance: Balance, network: Network, rails: Array, pulsed: tuple[float, ...]) -> None:
-    """Every load, the rails at `rails` (rails, n) [V]; `pulsed` tells for each the share of the time that a gate pulse flows."""
+    """What bends in the loads, the rails at `rails` (rails, n) [V]; `pulsed`: for each the share of the time its pulse flows."""
     for index, load in enumerate(network.specimens.shape.loads):
-        voltage = across(rails, load.rail, load.returns_to)
-        balance.branch(load.rail, load.returns_to, load_branch(network, index, voltage, pulsed[index]))
+        curve = load_curve(network, index, across(rails, load.rail, load.returns_to), pulsed[index])
+        if curve is not None:
+            balance.branch(load.rail, load.returns_to, curve)
 
 
 def load_figures(network: Network, rails: Array, pulsed: tuple[float, ...]) -> tuple[Array, Array]:
     """Voltage across every load [V] and its current [A] at mean `rails` (rails, n) [V], each (loads, n); `pulsed` as above."""
-    loads = network.specimens.shape.loads
-    shape = len(loads), network.specimens.count
-    voltages = np.array([across(rails, load.rail, load.returns_to) for load in loads]).reshape(shape)
-    currents = [load_branch(network, index, voltages[index], pulsed[index])[0] for index in range(len(loads))]
-    return voltages, np.array(currents).reshape(shape)
+    specimens = network.specimens
+    shape = len(specimens.shape.loads), specimens.count
+    voltages, currents = np.zeros(shape), np.zeros(shape)
+    for index, load in enumerate(specimens.shape.loads):
+        voltages[index] = across(rails, load.rail, load.returns_to)
+        ohmic = voltages[index] * load_conductance(specimens, network.drawing, network.load_resistance, index)
+        curve = load_curve(network, index, voltages[index], pulsed[index])
+        currents[index] = ohmic if curve is None else ohmic + curve[0]
+    return voltages, currents

@@ -102,6 +102,23 @@ class Rectifier:
         caught, steep = branches.junction(-rail, known.DIODE_DROP, known.DIODE_CURRENT, known.DIODE_SLOPE)
         return (drive - rail) / resistance + caught, -1.0 / resistance - steep
 
+    def landing(
+        self, drive: Array, resistance: Array, rail: Array, move: Array, current: Array, slope: Array | float
+    ) -> Array:
+        """Where a first rail at `rail` [V] goes that Newton's method would `move` [V] across the zener's knee at the node, from
+        `current` [A] into it and the `slope` [S] of its surplus: to the voltage at which the diode passes what is wanted there.
+        """
+        assert self.zener is not None
+        target, knee = rail + move, self.zener - known.DIODE_DROP
+        crosses = (np.abs(target - knee) > known.ZENER_SLOPE) & ((target > knee) == (rail < knee))
+        if not crosses.any():
+            return target
+        wanted = np.where(crosses, current + slope * (target - knee), 0.0)
+        left = (drive - self.zener) / resistance - wanted
+        lands = known.ZENER_SLOPE * np.log(np.maximum(left, LEAST_CURRENT) / known.ZENER_CURRENT)
+        lands = knee + lands - known.DIODE_SLOPE * np.log(np.maximum(wanted, LEAST_CURRENT) / known.DIODE_CURRENT)
+        return np.where(crosses, np.clip(lands, np.minimum(rail, target), np.maximum(rail, target)), target)
+
     def finish(self, drive: Array, resistance: Array, rail: Array, current: Array) -> tuple[Array, Array, Array]:
         """Once the step is solved: current through the input [A], signed like the drive; the node zener's reverse current [A]
         and its voltage [V] (nil without one).

@@ -7,46 +7,60 @@ cycles do for most. Those that do not repeat within `MOST_CYCLES` are said not t
 
 from __future__ import annotations
 
-from dataclasses import replace
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
 
 from benchtool.physics import constants as known
-from benchtool.physics.cycle import Cycle, Held, Measured, first_guess
-from benchtool.physics.laws import Array, Flags
+from benchtool.physics.cycle import Centre, Cycle, Measured, Pace, first_guess
+from benchtool.physics.laws import AVERAGE_RESPONDING, Array, Flags
 from benchtool.physics.mean_value import Means, mean_pulses, means
-from benchtool.physics.network import Balance, Network, add_loads, add_rails, load_figures
+from benchtool.physics.network import Balance, Network, add_loads, add_regulators, load_figures
 from benchtool.physics.rectifier import Rectifier
 from benchtool.physics.settled import Settled
 from benchtool.physics.specimens import Specimens
 
-STEPS, FINE_STEPS = 64, 256
-"""Steps a cycle, and for specimens whose current comes in short pulses or whose rail is rough."""
+
+@dataclass(frozen=True, slots=True)
+class Effort:
+    """What a settled cycle may cost: `fine` steps, if any, are for specimens whose current comes in short pulses or whose rail is
+    rough; a cycle repeats when no rail has further to go than `share` of itself, or `volts`.
+    """
+
+    coarse: Pace
+    fine: Pace | None
+    most_cycles: int
+    share: float
+    volts: float
+
+
+FIGURES = Effort(Pace(64, 13, 3e-3), Pace(256, 13, 3e-3), most_cycles=24, share=5e-5, volts=3e-4)
+"""For what is shown as a figure."""
+CROWD = Effort(Pace(32, 5, 1e-2), None, most_cycles=8, share=1e-3, volts=5e-3)
+"""For many specimens that are compared with a meter."""
 PULSED, ROUGH = 1.8, 0.05
 """RMS over mean of the line current (1.11 for a sine), and ripple over mean of a rail, from which the fine steps are taken."""
-MOST_CYCLES = 24
 CHUNK = 4096
 """Specimens stepped together: as many as a processor's cache holds."""
-REPEATS_SHARE, REPEATS_VOLTS = 5e-5, 3e-4
-"""A cycle repeats when no rail has further to go than this share of itself, or these volts."""
 SOLVED_VOLTS = 0.05
 """Worst move left in a step's last round with which the step still counts as solved [V]."""
-FARTHEST = 0.3
-"""Share of itself by which a rail is moved ahead at most."""
+FARTHEST, CLOSER = 0.3, 0.35
+"""Share of itself, and volts, by which a rail is moved ahead at most; and what is left of that when it turns back."""
 
 
-def settle(specimens: Specimens, on: tuple[str, ...], *, warm: bool = False) -> Settled:
+def settle(specimens: Specimens, on: tuple[str, ...], *, warm: bool = False, effort: Effort = FIGURES) -> Settled:
     """The settled cycle of every specimen with the switched loads `on` commanded on; `warm` after 15 minutes on."""
     start = means(specimens, on, warm=warm)
     figures = _Figures(len(start.rails), specimens.count)
     for index in _alike(specimens):
-        part = _settle_alike(start.network.part(index), start.rails[:, index], STEPS)
+        part = _settle_alike(start.network.part(index), start.rails[:, index], effort.coarse, effort)
         figures.take_over(index, part)
         fine = np.flatnonzero(part.needs_fine_steps())
-        if fine.size:
+        if fine.size and effort.fine is not None:
             again = index[fine]
-            figures.take_over(again, _settle_alike(start.network.part(again), part.rails["mean"][:, fine], FINE_STEPS))
+            rails = part.rails["mean"][:, fine]
+            figures.take_over(again, _settle_alike(start.network.part(again), rails, effort.fine, effort))
     return _assembled(specimens, start, figures)
 
 
@@ -63,8 +77,8 @@ class _Figures:
     """What is kept of a settled cycle, filled in as specimens settle."""
 
     def __init__(self, rails: int, count: int) -> None:
-        self.rails = {name: np.zeros((rails, count)) for name in ("mean", "square", "pp", "zener", "power")}
-        names = ("supply", "line", "line_square", "real", "dropper", "dropper_square")
+        self.rails = {name: np.zeros((rails, count)) for name in ("mean", "square", "magnitude", "pp", "zener", "power")}
+        names = ("supply", "line", "line_square", "real", "dropper", "dropper_square", "dropper_magnitude")
         self.singles = {name: np.zeros(count) for name in names}
         self.converged: Flags = np.zeros(count, dtype=bool)
 
@@ -73,6 +87,7 @@ class _Figures:
         rails, single, steps = self.rails, self.singles, cycle.steps
         rails["mean"][:, index] = measured.rail / steps
         rails["square"][:, index] = measured.rail_square / steps
+        rails["magnitude"][:, index] = measured.rail_magnitude / steps
         rails["pp"][:, index] = measured.highest - measured.lowest
         rails["zener"][:, index] = measured.zener / steps
         rails["power"][:, index] = measured.zener_power / steps
@@ -82,6 +97,7 @@ class _Figures:
         single["real"][index] = (measured.real - cycle.added * measured.line_square) / steps
         single["dropper"][index] = measured.dropper / steps
         single["dropper_square"][index] = measured.dropper_square / steps
+        single["dropper_magnitude"][index] = measured.dropper_magnitude / steps
         self.converged[index] = converged
 
 
@@ -100,36 +116,32 @@ class _Figures:
         return np.asarray(pulsed | rough)
 
 
-def _settle_alike(network: Network, rails: Array, steps: int) -> _Figures:
+def _settle_alike(network: Network, rails: Array, pace: Pace, effort: Effort) -> _Figures:
     """Steps specimens of one junction state until they repeat; those that do drop out."""
     count = network.specimens.count
     figures, rest = _Figures(len(rails), count), np.arange(count)
-    rectifier, cycle = Rectifier(network.specimens), Cycle(network, steps)
-    held = first_guess(cycle, rails, rectifier)
-    for number in range(MOST_CYCLES):
-        before = held.reservoirs
-        held, measured = cycle.run(held, rectifier)
-        ahead = _ahead(network, measured, steps, held.reservoirs - before)
-        to_go = np.maximum(np.abs(ahead), np.abs(held.reservoirs - before)).max(axis=0)
-        allowed = REPEATS_SHARE * np.abs(measured.rail / steps).max(axis=0) + REPEATS_VOLTS
+    cycle = Cycle(network, Rectifier(network.specimens), pace)
+    held, centre = first_guess(cycle, rails), Centre(rails, np.zeros(count))
+    reach, before = FARTHEST * np.abs(rails) + FARTHEST, np.zeros_like(rails)
+    for number in range(effort.most_cycles):
+        started = held.reservoirs
+        held, measured = cycle.run(held, centre)
+        drift = held.reservoirs - started
+        ahead = np.clip(_ahead(cycle.network, measured, pace.steps, drift), -reach, reach)
+        to_go = np.maximum(np.abs(ahead), np.abs(drift)).max(axis=0)
+        allowed = effort.share * np.abs(measured.rail / pace.steps).max(axis=0) + effort.volts
         repeats = (to_go <= allowed) & (measured.moved <= SOLVED_VOLTS) & (number > 0)
         figures.keep(rest, cycle, measured, repeats)
+        centre = Centre(measured.rail / pace.steps, measured.dropper / pace.steps)
         if repeats.all():
             break
         held = replace(held, reservoirs=held.reservoirs + ahead, rails=held.rails + ahead)
+        reach, before = np.where(ahead * before < 0.0, CLOSER * reach, reach), ahead
         if number > 1 and repeats.mean() > 0.5:
-            network, rectifier, cycle, held, rest = _left(network, rectifier, held, rest, ~repeats, steps)
+            going = np.flatnonzero(~repeats)
+            cycle, held, rest = cycle.part(going), held.part(going), rest[going]
+            centre, reach, before = centre.part(going), reach[:, going], before[:, going]
     return figures
-
-
-def _left(
-    network: Network, rectifier: Rectifier, held: Held, rest: NDArray[np.intp], going: Flags, steps: int
-) -> tuple[Network, Rectifier, Cycle, Held, NDArray[np.intp]]:
-    """Everything for the specimens that go on."""
-    index = np.flatnonzero(going)
-    part = network.part(index)
-    kept = Held(held.dropper[index], held.input[index], held.reservoirs[:, index], held.rails[:, index])
-    return part, rectifier.part(part.specimens, index), Cycle(part, steps), kept, rest[index]
 
 
 def _ahead(network: Network, measured: Measured, steps: int, drift: Array) -> Array:
@@ -139,18 +151,17 @@ def _ahead(network: Network, measured: Measured, steps: int, drift: Array) -> Ar
     knee, and of the supply.
     """
     specimens, rails = network.specimens, measured.rail / steps
-    balance = Balance(len(rails))
+    balance = Balance(network.straight, rails)
     for index, rail in enumerate(specimens.shape.rails):
         at_node = index == 0 and specimens.shape.zener_at_node
-        reverse = 0.0 if at_node else measured.zener[index] / steps / known.ZENER_SLOPE
-        slope = reverse + 1.0 / specimens.zener_short[index]
-        balance.branch(index, rail.clamps_to, (np.zeros_like(slope), slope))
-    add_rails(balance, network, rails)
+        if rail.has_zener and not at_node:
+            slope = measured.zener[index] / steps / known.ZENER_SLOPE
+            balance.branch(index, rail.clamps_to, (np.zeros_like(slope), slope))
+    add_regulators(balance, specimens, rails)
     add_loads(balance, network, rails, mean_pulses(specimens))
     balance.inject(0, measured.supply / steps, measured.supply_slope / steps)
     far = balance.relaxed(specimens.reservoir * specimens.frequency, drift)
-    reach = FARTHEST * np.abs(rails) + 1.0
-    return np.where(specimens.reservoir > 0.0, np.clip(far, -reach, reach), 0.0)
+    return np.where(specimens.reservoir > 0.0, far, 0.0)
 
 
 def _assembled(specimens: Specimens, start: Means, figures: _Figures) -> Settled:
@@ -168,6 +179,9 @@ def _assembled(specimens: Specimens, start: Means, figures: _Figures) -> Settled
         real_power=single["real"],
         dropper_voltage=np.sqrt(np.maximum(single["dropper_square"] - single["dropper"] ** 2, 0.0)),
         dropper_dc=np.abs(single["dropper"]),
+        line_average=AVERAGE_RESPONDING * single["line"],
+        dropper_average=AVERAGE_RESPONDING * single["dropper_magnitude"],
+        ripple_average=AVERAGE_RESPONDING * rails["magnitude"],
         load_voltage=voltages,
         load_current=currents,
         converged=figures.converged & start.solved,

@@ -161,6 +161,7 @@ STORIES: list[dict[str, Any]] = [
             {"what": "rail-voltage", "rail": "12 V rail", "on": ["lamp relay"]},
             {"what": "load-responds", "load": "lamp relay", "value": "yes"},
             {"what": "dropper-capacitance", "lifted": True},
+            {"what": "reservoir-esr", "rail": "12 V rail"},
             {"what": "bleeder-resistance", "value": "open"},
         ],
     },
