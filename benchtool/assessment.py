@@ -15,7 +15,7 @@ from benchtool.catalogue.cautions import cautions
 from benchtool.diagnosis.checks import next_checks
 from benchtool.diagnosis.disagreement import disagreements
 from benchtool.diagnosis.effective import effective_of
-from benchtool.diagnosis.evidence import Because, because, fails_to_run
+from benchtool.diagnosis.evidence import Because, evidence_of, fails_to_run
 from benchtool.diagnosis.posterior import Posterior, posterior_of
 from benchtool.diagnosis.safety import bleeder_read, power_allowed, safety_findings, zener_open_of
 from benchtool.observed import Reading
@@ -122,21 +122,20 @@ def _band(values: Array, healthy: Settled) -> tuple[float | None, float | None]:
 
 def _suspects(posterior: Posterior, case: Case) -> tuple[Suspect, ...]:
     """Every hypothesis and `unexplained`, the most probable first; evidence in the order it was taken."""
-    board, meter, readings = posterior.board, posterior.meter, posterior.readings
     order = {reading: number for number, reading in enumerate(case.readings)}
 
     def taken_as(row: Because) -> int:
         return order[row.reading]
 
-    healthy = next(item for item in posterior.evidence if not item.hypothesis.faults)
+    fails, evidence = fails_to_run(posterior), evidence_of(posterior)
     suspects = [
         Suspect(
-            hypothesis=item.hypothesis,
-            probability=float(probability),
-            explains_complaint=bool(item.hypothesis.faults) and fails_to_run(item, board),
-            because=tuple(sorted(because(item, healthy, board, meter, readings), key=taken_as)),
+            hypothesis=hypothesis,
+            probability=float(posterior.probabilities[index]),
+            explains_complaint=bool(hypothesis.faults) and bool(fails[index]),
+            because=tuple(sorted(evidence[index], key=taken_as)),
         )
-        for item, probability in zip(posterior.evidence, posterior.probabilities, strict=True)
+        for index, hypothesis in enumerate(posterior.hypotheses)
     ]
     suspects.append(Suspect(None, posterior.unexplained, explains_complaint=False))
     return tuple(sorted(suspects, key=lambda suspect: -suspect.probability))

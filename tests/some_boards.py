@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from functools import cache
+from functools import cache, lru_cache
 from pathlib import Path
 from typing import Any
 
@@ -11,7 +11,7 @@ import pytest
 from benchtool import assessment, casefile
 from benchtool.board import Board
 from benchtool.catalogue.readings import READING_KINDS
-from benchtool.diagnosis import effective, posterior
+from benchtool.diagnosis import closer, crowd, effective, posterior
 from benchtool.observed import Reading, ReadingValue
 from benchtool.physics import budget, mean_value, waveform
 
@@ -82,9 +82,10 @@ def draw_few(monkeypatch: pytest.MonkeyPatch, count: int, *, coarse: bool = Fals
     `coarse`: many of them are left unsolved as well, and only a hypothesis that leads by far is drawn again.
     """
     for module, name in (
-        (posterior, "DRAWN"), (posterior, "REDRAWN"), (effective, "DRAWN"), (assessment, "BAND_DRAWN"),
+        (crowd, "EACH"), (closer, "REDRAWN"), (effective, "DRAWN"), (assessment, "BAND_DRAWN"),
     ):
         monkeypatch.setattr(module, name, count)
+    forget(monkeypatch)
     if coarse:
         monkeypatch.setattr(posterior, "LEADS_FROM", 0.2)
         monkeypatch.setattr(mean_value, "MOST_STEPS", 12)
@@ -93,6 +94,12 @@ def draw_few(monkeypatch: pytest.MonkeyPatch, count: int, *, coarse: bool = Fals
         rough = waveform.Effort(waveform.Pace(8, 3, 0.1), None, most_cycles=2, share=0.01, volts=0.1)
         monkeypatch.setattr(waveform, "FIGURES", rough)
         monkeypatch.setattr(waveform, "CROWD", rough)
+
+
+def forget(monkeypatch: pytest.MonkeyPatch) -> None:
+    """What is kept for a board, kept for this test only."""
+    monkeypatch.setattr(posterior, "crowd_of", lru_cache(crowd.Crowd))
+    monkeypatch.setattr(closer, "_bench", lru_cache(closer._bench.__wrapped__))
 
 
 @cache

@@ -19,13 +19,12 @@ from benchtool.catalogue.faults import FAULTS_BY_NAME
 from benchtool.catalogue.readings import READING_KINDS
 from benchtool.catalogue.shown import Shown
 from benchtool.catalogue.strikes import Place
-from benchtool.diagnosis import checks
+from benchtool.diagnosis import checks, crowd
 from benchtool.diagnosis.checks import candidates, minutes_of, next_checks
+from benchtool.diagnosis.crowd import Crowd
 from benchtool.diagnosis.hypotheses import Hypothesis, Struck
-from benchtool.diagnosis.posterior import Evidence, Posterior, posterior_of
+from benchtool.diagnosis.posterior import Posterior, posterior_of
 from benchtool.observed import Check, Meter
-from benchtool.physics.bench import Bench
-from benchtool.physics.specimens import as_marked
 from tests.some_boards import CONTRACT, FULL, draw_few, every_board, read
 
 BOARDS = every_board()
@@ -33,24 +32,46 @@ METER = Meter()
 NAMES = ("fuse-open", "diode-short", "dropper-open")
 
 
-def known_posterior(probabilities: Sequence[float]) -> Posterior:
+EACH = 2
+
+
+def known_posterior(probabilities: Sequence[float], monkeypatch: pytest.MonkeyPatch) -> Posterior:
     """Hypotheses of given probabilities on two specimens each, nothing read yet."""
-    items = [
-        Evidence(
-            Hypothesis((Struck(FAULTS_BY_NAME[name], Place()),), 1.0), Bench(as_marked(FULL.board)), np.zeros((0, 1)), np.zeros(1)
-        )
-        for name, _ in zip(NAMES, probabilities, strict=False)
-    ]
-    chances = np.array(probabilities)
+    hypotheses = tuple(
+        Hypothesis((Struck(FAULTS_BY_NAME[name], Place()),), 1.0) for name, _ in zip(NAMES, probabilities, strict=False)
+    )
+    monkeypatch.setattr(crowd, "hypotheses_of", lambda board: hypotheses)
+    monkeypatch.setattr(crowd, "EACH", EACH)
+    chances, nothing = np.array(probabilities), np.zeros((0, len(hypotheses), EACH))
     return Posterior(
-        FULL.board, METER, (), tuple(items), chances, 1.0 - float(chances.sum()), np.zeros(0), chances / chances.sum()
+        crowd=Crowd(FULL.board),
+        meter=METER,
+        readings=(),
+        densities=nothing,
+        log_prior=np.log(np.full(nothing.shape[1:], 1.0 / EACH)),
+        log_likelihood=np.zeros(len(hypotheses)),
+        closer={},
+        probabilities=chances,
+        unexplained=1.0 - float(chances.sum()),
+        uniform=np.zeros(0),
+        explained=chances / chances.sum(),
     )
 
 
-def showing(found: Posterior, shown: Sequence[Shown]) -> Any:
-    """What a check shows, hypothesis by hypothesis."""
-    by_bench = {id(item.bench): each for item, each in zip(found.evidence, shown, strict=True)}
-    return lambda view: by_bench[id(view.bench)]
+def foretell(monkeypatch: pytest.MonkeyPatch, **shown: Sequence[Shown]) -> None:
+    """Lets each check show what is given for it, hypothesis by hypothesis; no other check is there."""
+    def joined(parts: Sequence[Shown]) -> Shown:
+        def flat(arrays: Sequence[Any]) -> Any:
+            return None if arrays[0] is None else np.repeat(np.concatenate(arrays), EACH)
+
+        chances = {word: flat([part.chances[word] for part in parts]) for word in parts[0].chances}
+        given, never = any(part.opened is not None for part in parts), np.array([False])
+        opened = flat([never if part.opened is None else part.opened for part in parts]) if given else None
+        return Shown(flat([part.value for part in parts]), 0.0, opened, None, chances)
+
+    table = {what.replace("_", "-"): (lambda view, parts=parts: joined(parts)) for what, parts in shown.items()}
+    monkeypatch.setattr(checks, "SHOWS", table)
+    monkeypatch.setattr(crowd, "SHOWS", table)
 
 
 def mutual_information(prior: Sequence[float], chances: Sequence[Sequence[float]]) -> float:
@@ -77,18 +98,18 @@ WORDS = ("good", "open", "short")
 def test_the_gain_is_the_mutual_information(
     prior: tuple[float, ...], chances: tuple[tuple[float, ...], ...], monkeypatch: pytest.MonkeyPatch
 ) -> None:
-    found = known_posterior(prior)
+    found = known_posterior(prior, monkeypatch)
     shown = [Shown(chances={word: np.array([p]) for word, p in zip(WORDS, row, strict=True)}) for row in chances]
-    monkeypatch.setattr(checks, "SHOWS", {"rectifier-test": showing(found, shown)})
+    foretell(monkeypatch, rectifier_test=shown)
     (only,) = next_checks(found, ())
     assert only.gain == pytest.approx(mutual_information(prior, chances), rel=1e-9)
 
 
 def test_what_remains_unexplained_does_not_dilute_the_gain(monkeypatch: pytest.MonkeyPatch) -> None:
     """Hypotheses of 0.4 and 0.4 with 0.2 unexplained count as a half each: a check that parts them is worth one bit."""
-    found = known_posterior((0.4, 0.4))
+    found = known_posterior((0.4, 0.4), monkeypatch)
     shown = [Shown(chances={word: np.array([float(word == mine)]) for word in WORDS}) for mine in ("good", "open")]
-    monkeypatch.setattr(checks, "SHOWS", {"rectifier-test": showing(found, shown)})
+    foretell(monkeypatch, rectifier_test=shown)
     (only,) = next_checks(found, ())
     assert only.gain == pytest.approx(1.0)
 
@@ -98,23 +119,23 @@ def numbers(*values: float) -> list[Shown]:
 
 
 def test_a_number_that_parts_two_hypotheses_tells_one_bit(monkeypatch: pytest.MonkeyPatch) -> None:
-    found = known_posterior((0.5, 0.5))
-    monkeypatch.setattr(checks, "SHOWS", {"inrush-voltage": showing(found, numbers(1.0, 60.0))})
+    found = known_posterior((0.5, 0.5), monkeypatch)
+    foretell(monkeypatch, inrush_voltage=numbers(1.0, 60.0))
     gains = [item.gain for item in next_checks(found, ())]
     assert gains == pytest.approx([1.0, 1.0])  # loads off, loads on
 
 
 def test_a_number_that_is_the_same_for_all_tells_nothing(monkeypatch: pytest.MonkeyPatch) -> None:
-    found = known_posterior((0.5, 0.5))
-    monkeypatch.setattr(checks, "SHOWS", {"inrush-voltage": showing(found, numbers(5.0, 5.0))})
+    found = known_posterior((0.5, 0.5), monkeypatch)
+    foretell(monkeypatch, inrush_voltage=numbers(5.0, 5.0))
     assert next_checks(found, ()) == ()
 
 
 def test_a_word_in_place_of_a_number_tells_as_much(monkeypatch: pytest.MonkeyPatch) -> None:
-    found = known_posterior((0.5, 0.5))
+    found = known_posterior((0.5, 0.5), monkeypatch)
     yes, no = np.array([True]), np.array([False])
     shown = [Shown(np.array([100.0]), opened=no), Shown(np.array([np.inf]), opened=yes)]
-    monkeypatch.setattr(checks, "SHOWS", {"fuse-resistance": showing(found, shown)})
+    foretell(monkeypatch, fuse_resistance=shown)
     (only,) = next_checks(found, ())
     assert only.gain > 0.8
 
@@ -199,12 +220,13 @@ def test_minutes(check: dict[str, Any], last: str | None, minutes: float) -> Non
 
 def test_a_dead_check_comes_before_a_live_one_of_like_use(monkeypatch: pytest.MonkeyPatch) -> None:
     """One bit each, two minutes each: across the inrush resistor, live, and the dropper, dead."""
-    found = known_posterior((0.5, 0.5))
+    found = known_posterior((0.5, 0.5), monkeypatch)
     monkeypatch.setattr(checks, "FIRST_LIVE_MINUTES", 0.0)
-    monkeypatch.setattr(checks, "SHOWS", {
-        "inrush-voltage": showing(found, numbers(1.0, 60.0)),
-        "dropper-capacitance": showing(found, numbers(1e-9, 1e-6)),
-    })
+    foretell(
+        monkeypatch,
+        inrush_voltage=numbers(1.0, 60.0),
+        dropper_capacitance=numbers(1e-9, 1e-6),
+    )
     order = [(item.condition, item.check.lifted) for item in next_checks(found, ())]
     assert order == [("dead", False), ("live", False), ("live", False), ("dead", True)]
 
@@ -214,30 +236,33 @@ def test_a_live_check_comes_first_only_if_it_tells_twice_as_much_a_minute(
     live_minutes: float, first: str, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     """One bit each; the dead check takes two minutes, the live one a little over and a little under half of that."""
-    found = known_posterior((0.5, 0.5))
+    found = known_posterior((0.5, 0.5), monkeypatch)
     monkeypatch.setattr(checks, "minutes_of", lambda check, last: live_minutes if check.what == "inrush-voltage" else 2.0)
-    monkeypatch.setattr(checks, "SHOWS", {
-        "inrush-voltage": showing(found, numbers(1.0, 60.0)),
-        "dropper-capacitance": showing(found, numbers(1e-9, 1e-6)),
-    })
+    foretell(
+        monkeypatch,
+        inrush_voltage=numbers(1.0, 60.0),
+        dropper_capacitance=numbers(1e-9, 1e-6),
+    )
     assert next_checks(found, ())[0].condition == first
 
 
 def test_where_the_board_must_not_be_powered_no_live_check_is_proposed(monkeypatch: pytest.MonkeyPatch) -> None:
-    found = known_posterior((0.5, 0.5))
-    monkeypatch.setattr(checks, "SHOWS", {
-        "inrush-voltage": showing(found, numbers(1.0, 60.0)),
-        "dropper-capacitance": showing(found, numbers(1e-9, 1e-6)),
-    })
+    found = known_posterior((0.5, 0.5), monkeypatch)
+    foretell(
+        monkeypatch,
+        inrush_voltage=numbers(1.0, 60.0),
+        dropper_capacitance=numbers(1e-9, 1e-6),
+    )
     assert {item.condition for item in next_checks(found, (), power_allowed=False)} == {"dead"}
 
 
 def test_of_two_checks_that_cost_the_same_the_one_that_tells_more_comes_first(monkeypatch: pytest.MonkeyPatch) -> None:
-    found = known_posterior((0.4, 0.3, 0.3))
-    monkeypatch.setattr(checks, "SHOWS", {
-        "fuse-resistance": showing(found, numbers(1.0, 1.0, 900.0)),
-        "inrush-resistance": showing(found, numbers(1.0, 30.0, 900.0)),
-    })
+    found = known_posterior((0.4, 0.3, 0.3), monkeypatch)
+    foretell(
+        monkeypatch,
+        fuse_resistance=numbers(1.0, 1.0, 900.0),
+        inrush_resistance=numbers(1.0, 30.0, 900.0),
+    )
     assert [item.check.what for item in next_checks(found, ())] == ["inrush-resistance", "fuse-resistance"]
 
 

@@ -6,7 +6,6 @@ Densities are held to SciPy's quadrature: a likelihood that does not add up to o
 from __future__ import annotations
 
 import math
-from collections.abc import Sequence
 from dataclasses import replace
 from typing import Any
 
@@ -22,13 +21,11 @@ from benchtool.catalogue.faults import FAULTS_BY_NAME
 from benchtool.catalogue.readings import READING_KINDS
 from benchtool.catalogue.shown import Shown, View
 from benchtool.catalogue.strikes import Place
-from benchtool.diagnosis import posterior
+from benchtool.diagnosis import crowd, posterior
 from benchtool.diagnosis.hypotheses import Hypothesis, Struck, hypotheses_of
-from benchtool.diagnosis.likelihood import log_density, log_uniform_density, look_log_chance
-from benchtool.diagnosis.posterior import Evidence, Posterior, log_sum, posterior_of
+from benchtool.diagnosis.likelihood import effective_number, log_density, log_sum, log_uniform_density, look_log_chance
+from benchtool.diagnosis.posterior import Posterior, posterior_of
 from benchtool.observed import Meter, Reading
-from benchtool.physics.bench import Bench
-from benchtool.physics.specimens import as_marked
 from tests.some_boards import CONTRACT, FULL, draw_few, read
 from tests.test_samples import ranked
 
@@ -46,16 +43,38 @@ def test_the_logarithm_of_a_sum() -> None:
     assert log_sum(np.array([1e5, 0.0])) == pytest.approx(1e5)
 
 
-def evidence(hypothesis: Hypothesis, rows: Sequence[Sequence[float]]) -> Evidence:
-    """Chances of the readings on two specimens that count alike."""
-    return Evidence(hypothesis, Bench(as_marked(FULL.board)), np.log(np.array(rows)), np.log([0.5, 0.5]))
-
-
-def test_the_likelihood_is_the_mean_over_the_specimens() -> None:
+def test_the_likelihood_is_the_mean_over_the_specimens(monkeypatch: pytest.MonkeyPatch) -> None:
     """Two specimens, three readings: (0.9·0.5·0.2 + 0.1·0.5·0.8) / 2 = 0.065; the first has 0.09 of the 0.13 in it."""
-    item = evidence(SOUND, [[0.9, 0.1], [0.5, 0.5], [0.2, 0.8]])
-    assert math.exp(item.log_likelihood) == pytest.approx(0.065)
-    assert item.shares() == pytest.approx([0.09 / 0.13, 0.04 / 0.13])
+    densities = np.log(np.array([[0.9, 0.1], [0.5, 0.5], [0.2, 0.8]]))[:, None]
+    monkeypatch.setattr(posterior, "SPREAD_OVER", 1.0)
+    found = bare(densities)
+    assert math.exp(float(log_sum(found.densities.sum(axis=0) + found.log_prior)[0])) == pytest.approx(0.065)
+    assert found.shares()[0] == pytest.approx([0.09 / 0.13, 0.04 / 0.13])
+
+
+def bare(densities: Any) -> Posterior:
+    """Nothing but log densities (readings, hypotheses, each) on specimens that count alike."""
+    _, hypotheses, each = densities.shape
+    level, nothing = np.log(np.full((hypotheses, each), 1.0 / each)), np.zeros(hypotheses)
+    return Posterior(
+        crowd=crowd.crowd_of(FULL.board), meter=METER, readings=(), densities=densities, log_prior=level, log_likelihood=nothing,
+        closer={}, probabilities=nothing, unexplained=1.0, uniform=nothing, explained=nothing,
+    )
+
+
+def test_specimens_are_worth_as_many_as_their_weights_are_even() -> None:
+    """(Σw)²/Σw² (Kish, Survey Sampling, 1965; value from memory): 3, 1, 1, 1 are worth 36/12 = 3; one alone is worth one."""
+    assert effective_number(np.log([3.0, 1.0, 1.0, 1.0])) == pytest.approx(3.0)
+    assert effective_number(np.array([0.0, -900.0])) == pytest.approx(1.0)
+
+
+def test_where_a_reading_leaves_a_handful_what_is_foretold_is_spread_over_more() -> None:
+    densities = np.full((1, 1, 200), -30.0)
+    densities[0, 0, 0] = 0.0
+    shares = bare(densities).shares()[0]
+    assert shares.sum() == pytest.approx(1.0)
+    assert effective_number(np.log(shares)) >= posterior.SPREAD_OVER
+    assert shares[0] == shares.max()
 
 
 CHANCES = {"rectifier-test": (0.8, 0.3), "tap-test": (0.9, 0.5), "switch-test": (0.6, 0.6)}
@@ -76,9 +95,9 @@ def shows_chances(what: str) -> Any:
 
 def test_two_hypotheses_and_three_readings_on_paper(monkeypatch: pytest.MonkeyPatch) -> None:
     """80·0.8·0.9·0.6 = 34.56; 10·0.3·0.5·0.6 = 0.9; a mistake, one of three words each: 12/27 = 0.4444."""
-    monkeypatch.setattr(posterior, "hypotheses_of", lambda board: (SOUND, FUSE))
-    monkeypatch.setattr(posterior, "SHOWS", {what: shows_chances(what) for what in CHANCES})
     draw_few(monkeypatch, 32)
+    monkeypatch.setattr(crowd, "hypotheses_of", lambda board: (SOUND, FUSE))
+    monkeypatch.setattr(crowd, "SHOWS", {what: shows_chances(what) for what in CHANCES})
     found = posterior_of(FULL.board, METER, THREE)
     total = 34.56 + 0.9 + 12.0 / 27.0
     assert found.probabilities == pytest.approx([34.56 / total, 0.9 / total], rel=1e-9)
@@ -165,8 +184,8 @@ def test_without_readings_the_priors_stand(monkeypatch: pytest.MonkeyPatch) -> N
     prior = weights(FULL.board)
     total = math.fsum(prior.values()) + 12.0
     assert found.unexplained == pytest.approx(12.0 / total, rel=1e-9)
-    for item, probability in zip(found.evidence, found.probabilities, strict=True):
-        assert probability == pytest.approx(item.hypothesis.weight / total, rel=1e-9)
+    for hypothesis, probability in zip(found.hypotheses, found.probabilities, strict=True):
+        assert probability == pytest.approx(hypothesis.weight / total, rel=1e-9)
 
 
 def test_places_share_the_published_weight_of_their_fault() -> None:
@@ -335,7 +354,7 @@ def test_readings_sharpen_the_posterior_of_the_contract(monkeypatch: pytest.Monk
 
     def lost(count: int) -> float:
         found: Posterior = posterior_of(CONTRACT.board, METER, CONTRACT.readings[:count])
-        names = [[struck.fault.name for struck in item.hypothesis.faults] for item in found.evidence]
+        names = [[struck.fault.name for struck in hypothesis.faults] for hypothesis in found.hypotheses]
         return float(found.probabilities[names.index(["dropper-capacitance-lost"])])
 
     assert lost(1) < lost(2) < lost(3)

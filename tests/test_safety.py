@@ -240,7 +240,7 @@ def test_a_rail_behind_a_resistor_climbs_no_higher_than_the_one_that_feeds_it() 
 def test_the_posterior_is_summed_over_every_hypothesis_with_an_open_zener(monkeypatch: pytest.MonkeyPatch) -> None:
     draw_few(monkeypatch, 32)
     posterior = posterior_of(FULL.board, Meter(), ())
-    names = [[struck.fault.name for struck in item.hypothesis.faults] for item in posterior.evidence]
+    names = [[struck.fault.name for struck in hypothesis.faults] for hypothesis in posterior.hypotheses]
     wanted = sum(p for p, of in zip(posterior.probabilities, names, strict=True) if "zener-open" in of)
     chances = zener_open_of(posterior)
     assert set(chances) == {"upper", "lower"}

@@ -28,12 +28,13 @@ class Shown:
 
 @dataclass(frozen=True, slots=True)
 class View:
-    """A check as it is made: on which specimens, on what board, by which meter."""
+    """A check as it is made: on which specimens, on what board, by which meter. `where` (n,): those that count, if not all."""
 
     bench: Bench
     board: Board
     check: Check
     meter: Meter
+    where: Flags | None = None
 
     @property
     def specimens(self) -> Specimens:
@@ -48,7 +49,7 @@ class View:
     @property
     def settled(self) -> Settled:
         """The settled state in which the check is made."""
-        return self.bench.settled(self.check.on, warm=self.warm)
+        return self.bench.settled(self.check.on, warm=self.warm, where=self.where)
 
     @property
     def rail(self) -> int:

@@ -107,7 +107,7 @@ def _dropper_dc(view: View) -> Shown:
 def _responds(view: View) -> Shown:
     load = view.load
     on = (view.board.loads[load].name,) if view.board.loads[load].switched else ()
-    when_meant, when_not = runs(view.bench, view.board, load, on, warm=view.warm)
+    when_meant, when_not = runs(view.bench, view.board, load, on, warm=view.warm, where=view.where)
     always = when_not * SURE
     yes = when_meant * (1.0 - when_not) * SURE
     rest = 1.0 - always - yes
@@ -239,7 +239,7 @@ def injection_limits(board: Board, check: Check) -> tuple[float, float]:
 
 def _injection(view: View) -> Shown:
     clamp, limit = injection_limits(view.board, view.check)
-    volts = view.bench.injected(view.check.on or (), view.rail, clamp, limit)
+    volts = view.bench.injected(view.check.on or (), view.rail, clamp, limit, where=view.where)
     solved = np.isfinite(volts)
     value = np.where(solved, volts, limit / 2.0)
     return Shown(value, 0.003 * value + 0.02 + np.where(solved, 0.0, limit))

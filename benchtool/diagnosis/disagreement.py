@@ -9,10 +9,8 @@ from itertools import combinations
 import numpy as np
 
 from benchtool.catalogue.readings import READING_KINDS
-from benchtool.catalogue.shown import View
-from benchtool.catalogue.shows import SHOWS
 from benchtool.diagnosis.likelihood import LEAST
-from benchtool.diagnosis.posterior import Evidence, Posterior, log_sum
+from benchtool.diagnosis.posterior import Posterior
 from benchtool.observed import Reading
 from benchtool.physics.laws import Array
 
@@ -31,50 +29,48 @@ class Disagreement:
 
 def disagreements(posterior: Posterior) -> tuple[Disagreement, ...]:
     """Every pair of readings that no single fault reconciles."""
-    singles = [item for item in posterior.evidence if len(item.hypothesis.faults) < 2]
-    return tuple(_found(posterior, [item.first for item in singles], [item for item in singles if item.wide is not None]))
+    return tuple(_found(posterior)) if len(posterior.readings) > 1 else ()
 
 
-def _found(posterior: Posterior, singles: list[Evidence], closer: list[Evidence]) -> Iterator[Disagreement]:
-    """`closer`: hypotheses drawn again around the readings, where two sharp ones may meet between the first specimens."""
-    uniform, readings = posterior.uniform, posterior.readings
-    if len(readings) < 2:
-        return
-    together = np.max([_log_pairs(item) for item in (*singles, *closer)], axis=0)
-    alone = np.max([_log_singles(item) for item in singles], axis=0)
+def _found(posterior: Posterior) -> Iterator[Disagreement]:
+    uniform, readings, alone = posterior.uniform, posterior.readings, posterior.alone()
+    singles = [index for index, hypothesis in enumerate(posterior.hypotheses) if len(hypothesis.faults) < 2]
+    together = _together(posterior, singles)
+    best = alone[:, singles].max(axis=1)
     for first, second in combinations(range(len(readings)), 2):
-        possible = alone[first] > uniform[first] and alone[second] > uniform[second]
+        possible = best[first] > uniform[first] and best[second] > uniform[second]
         if possible and together[first, second] < uniform[first] + uniform[second] - CLEARLY:
-            yield Disagreement(readings[first], readings[second], _implied(posterior, singles, first, second))
+            likeliest = max(singles, key=lambda index: np.log(posterior.hypotheses[index].weight) + alone[first, index])
+            yield Disagreement(readings[first], readings[second], _implied(posterior, likeliest, first, second))
 
 
-def _log_pairs(item: Evidence) -> Array:
-    """Logarithm of the likelihood of every two readings together, (readings, readings)."""
-    tops = item.densities.max(axis=1)
-    shares = np.exp(item.densities - tops[:, None])
-    joint = (shares * np.exp(item.log_prior)) @ shares.T
+def _together(posterior: Posterior, singles: list[int]) -> Array:
+    """Logarithm of the likelihood of every two readings together under the single fault that reconciles them best,
+    (readings, readings): between the specimens drawn first, or those drawn closer, where two sharp readings may meet.
+    """
+    found = [_log_pairs(posterior.densities[:, index], posterior.log_prior[index]) for index in singles]
+    found += [_log_pairs(posterior.closer[i].densities, posterior.closer[i].log_prior) for i in singles if i in posterior.closer]
+    return np.asarray(np.max(found, axis=0))
+
+
+def _log_pairs(densities: Array, log_prior: Array) -> Array:
+    """Logarithm of the likelihood of every two readings together, of (readings, n) and (n,); (readings, readings)."""
+    tops = densities.max(axis=1)
+    shares = np.exp(densities - tops[:, None])
+    joint = (shares * np.exp(log_prior)) @ shares.T
     return np.asarray(np.log(np.maximum(joint, 1e-300)) + tops[:, None] + tops)
 
 
-def _log_singles(item: Evidence) -> Array:
-    """Logarithm of the likelihood of every reading alone, (readings,)."""
-    return np.array([_log_alone(item, row) for row in range(len(item.densities))])
-
-
-def _log_alone(item: Evidence, row: int) -> float:
-    return log_sum(item.densities[row] + item.log_prior)
-
-
-def _implied(posterior: Posterior, singles: list[Evidence], first: int, second: int) -> tuple[float, float] | None:
+def _implied(posterior: Posterior, likeliest: int, first: int, second: int) -> tuple[float, float] | None:
     """What the first reading implies for the second: the 95 % range under the single fault that best accounts for the first."""
-    reading = posterior.readings[second]
+    reading, crowd = posterior.readings[second], posterior.crowd
     if READING_KINDS[reading.what].unit is None or not isinstance(reading.value, float):
         return None
-    likeliest = max(singles, key=lambda item: np.log(item.hypothesis.weight) + _log_alone(item, first))
-    shown = SHOWS[reading.what](View(likeliest.bench, posterior.board, reading.check, posterior.meter)).value
+    shown = crowd.shown(reading.check, posterior.meter).value
     assert shown is not None
-    weights = np.exp(np.maximum(likeliest.densities[first] + likeliest.log_prior, LEAST))
-    return weighted_range(np.where(np.isfinite(shown), shown, np.nan), weights)
+    here = shown.reshape(crowd.shape)[likeliest]
+    log_weights = posterior.densities[first, likeliest] + posterior.log_prior[likeliest]
+    return weighted_range(np.where(np.isfinite(here), here, np.nan), np.exp(np.maximum(log_weights, LEAST)))
 
 
 def weighted_range(values: Array, weights: Array) -> tuple[float, float] | None:

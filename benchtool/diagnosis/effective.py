@@ -17,7 +17,7 @@ from benchtool.catalogue.readings import READING_KINDS
 from benchtool.catalogue.shown import View
 from benchtool.catalogue.shows import LINE_ERROR, RAIL_ERROR, SHOWS
 from benchtool.diagnosis.likelihood import accuracy_of
-from benchtool.diagnosis.posterior import reading_population
+from benchtool.diagnosis.nearby import reading_population
 from benchtool.observed import Check, Meter, Reading
 from benchtool.physics.bench import Bench
 from benchtool.physics.budget import (

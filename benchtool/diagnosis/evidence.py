@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -10,13 +9,10 @@ import numpy as np
 from benchtool.board import Board, Rail, nominal_voltage
 from benchtool.catalogue.readings import READING_KINDS
 from benchtool.catalogue.runs import runs
-from benchtool.catalogue.shown import Shown, View
-from benchtool.catalogue.shows import SHOWS
 from benchtool.diagnosis.likelihood import accuracy_of
-from benchtool.diagnosis.posterior import Evidence, log_sum
+from benchtool.diagnosis.posterior import Posterior
 from benchtool.observed import Accuracy, Check, Meter, Reading
-from benchtool.physics.bench import Bench
-from benchtool.physics.laws import Array, accuracy_band, two_sigma
+from benchtool.physics.laws import Array, Flags, accuracy_band, two_sigma
 from benchtool.physics.sequence import METER_BLUR, coordinate
 
 BAND = (2.5, 97.5)
@@ -25,6 +21,10 @@ MOSTLY = 0.5
 """Share of the specimens that must show a word before the word is told in place of a range."""
 WORDS_TOLD = 0.25
 """Chance from which a word is told among several."""
+COUNT_WITHIN = 5.0
+"""Logarithm by which a specimen's weight may fall short of the heaviest and still count for a range."""
+COUNTS_FROM, GLANCE = 1e-3, 32
+"""Share of all that is explained from which all specimens of a hypothesis are looked at, and how many are otherwise."""
 TOO_HIGH = 1.5
 """Times its nominal voltage from which a rail is out of hand, whatever still works on it; common practice, no source."""
 
@@ -52,46 +52,55 @@ class Because:
     weight: float
 
 
-def expected(bench: Bench, board: Board, check: Check, meter: Meter) -> Expected:
-    """What `check` should show on the specimens of `bench`, the meter's own inaccuracy included."""
+def evidence_of(posterior: Posterior) -> list[tuple[Because, ...]]:
+    """For every hypothesis each reading's say on it; ranges as they were before any reading."""
+    alone = posterior.alone()
+    weights = (alone - alone[:, posterior.crowd.sound, None]) / float(np.log(10.0))
+    rows = []
+    for number, reading in enumerate(posterior.readings):
+        told = expected(posterior, reading.check)
+        healthy, read = told[posterior.crowd.sound], _guaranteed(reading, posterior.meter)
+        rows.append([Because(reading, read, this, healthy, float(weights[number, h])) for h, this in enumerate(told)])
+    return [tuple(row[index] for row in rows) for index in range(len(posterior.hypotheses))]
+
+
+def expected(posterior: Posterior, check: Check) -> list[Expected]:
+    """What `check` should show under every hypothesis, the meter's own inaccuracy included."""
+    crowd, meter = posterior.crowd, posterior.meter
     if check.what == "look":
-        return Expected(words=("weak evidence, never proof",))
-    shown = SHOWS[check.what](View(bench, board, check, meter))
+        return [Expected(words=("weak evidence, never proof",))] * len(crowd.hypotheses)
+    shown, kind = crowd.shown(check, meter), READING_KINDS[check.what]
+    counts = posterior.log_prior > posterior.log_prior.max(axis=1, keepdims=True) - COUNT_WITHIN
     if shown.value is None:
-        return Expected(words=_words(shown.chances))
+        chances = {word: _means(chance.reshape(crowd.shape), counts) for word, chance in shown.chances.items()}
+        return [Expected(words=_words({word: float(c[h]) for word, c in chances.items()})) for h in range(len(counts))]
+    found = _ranges(shown.value.reshape(crowd.shape), counts, accuracy_of(kind, meter), kind.low)
     for flag, word in ((shown.opened, "open"), (shown.shorted, "short")):
-        if flag is not None and word in READING_KINDS[check.what].words and float(np.mean(flag)) > MOSTLY:
-            return Expected(words=(word,))
-    values = _as_metered(shown, accuracy_of(READING_KINDS[check.what], meter))
-    low, high = np.maximum(np.percentile(values, BAND), READING_KINDS[check.what].low)
-    return Expected(low=float(low), high=float(high))
+        if flag is not None and word in kind.words:
+            mostly = _means(flag.reshape(crowd.shape), counts) > MOSTLY
+            found = [Expected(words=(word,)) if mostly[h] else range_of for h, range_of in enumerate(found)]
+    return found
 
 
-def _words(chances: dict[str, Array]) -> tuple[str, ...]:
-    means = {word: float(np.mean(chance)) for word, chance in chances.items()}
+def _means(values: Array | Flags, counts: Flags) -> Array:
+    """Means over those that count, row by row."""
+    return np.asarray((values * counts).sum(axis=1) / counts.sum(axis=1))
+
+
+def _words(means: dict[str, float]) -> tuple[str, ...]:
     likely = sorted((word for word, mean in means.items() if mean >= WORDS_TOLD), key=lambda word: -means[word])
     return tuple(likely) or (max(means, key=lambda word: means[word]),)
 
 
-def _as_metered(shown: Shown, accuracy: Accuracy) -> Array:
-    assert shown.value is not None
-    values = shown.value[np.isfinite(shown.value)]
-    limit = two_sigma(values, accuracy.relative, accuracy.floor)
-    return np.asarray(values + limit * (2.0 * coordinate(METER_BLUR, values.size) - 1.0))
-
-
-def because(item: Evidence, healthy: Evidence, board: Board, meter: Meter, readings: Sequence[Reading]) -> tuple[Because, ...]:
-    """Every reading's say on the hypothesis of `item`; ranges as they were before any reading."""
-    return tuple(
-        Because(
-            reading=reading,
-            read=_guaranteed(reading, meter),
-            if_this=expected(item.first.bench, board, reading.check, meter),
-            if_healthy=expected(healthy.first.bench, board, reading.check, meter),
-            weight=(_alone(item.first, row) - _alone(healthy.first, row)) / float(np.log(10.0)),
-        )
-        for row, reading in enumerate(readings)
-    )
+def _ranges(values: Array, counts: Flags, accuracy: Accuracy, least: float) -> list[Expected]:
+    """The 95 % ranges of the rows of `values` (hypotheses, each), as the meter may show them."""
+    limit = two_sigma(np.where(np.isfinite(values), values, 0.0), accuracy.relative, accuracy.floor)
+    metered = values + limit * (2.0 * coordinate(METER_BLUR, values.shape[1]) - 1.0)
+    found = []
+    for row, counted in zip(metered, counts & np.isfinite(values), strict=True):
+        low, high = np.percentile(row[counted], BAND) if counted.any() else (np.nan, np.nan)
+        found.append(Expected(low=max(float(low), least), high=max(float(high), least)) if counted.any() else Expected())
+    return found
 
 
 def _guaranteed(reading: Reading, meter: Meter) -> tuple[float, float] | None:
@@ -101,26 +110,25 @@ def _guaranteed(reading: Reading, meter: Meter) -> tuple[float, float] | None:
     return accuracy_band(reading.value, accuracy.relative, accuracy.floor)
 
 
-def _alone(item: Evidence, row: int) -> float:
-    """Logarithm of the likelihood of one reading by itself."""
-    return log_sum(item.densities[row] + item.log_prior)
+def fails_to_run(posterior: Posterior) -> Flags:
+    """Which boards, as the readings leave them, mostly fail to run their marked loads once warm: for every hypothesis.
 
-
-def fails_to_run(item: Evidence, board: Board) -> bool:
-    """Whether boards with this hypothesis, as the readings leave them, mostly fail to run their marked loads once warm.
-
-    A board with a rail too high, its loads on or off, does not run: it destroys itself.
+    A board with a rail too high, its loads on or off, does not run: it destroys itself. Of hypotheses that hardly count only the
+    first `GLANCE` specimens are looked at.
     """
-    on = board.switched_loads()
-    works = np.ones(item.bench.specimens.count)
-    for index, rail in enumerate(board.rails):
-        highest = _highest_held(board, rail)
-        for state in ((), on):
-            works[item.bench.settled(state, warm=True).rail_voltage[index] > highest] = 0.0
+    crowd, board, on = posterior.crowd, posterior.board, posterior.board.switched_loads()
+    looked = np.tile(np.arange(crowd.each) < GLANCE, (len(crowd.hypotheses), 1)) | (posterior.explained > COUNTS_FROM)[:, None]
+    where = looked.ravel()
+    works = np.ones(where.size)
+    for state in ((), on):
+        settled = crowd.bench.settled(state, warm=True, where=where)
+        for index, rail in enumerate(board.rails):
+            works[settled.rail_voltage[index] > _highest_held(board, rail)] = 0.0
     for load in range(len(board.loads)):
-        meant, unasked = runs(item.bench, board, load, on, warm=True)
+        meant, unasked = runs(crowd.bench, board, load, on, warm=True, where=where)
         works = np.minimum(works, meant * (1.0 - unasked))
-    return float(np.sum(item.shares() * works)) < 0.5
+    shares = np.where(looked, posterior.shares(), 0.0)
+    return np.asarray((shares * works.reshape(crowd.shape)).sum(axis=1) < 0.5 * shares.sum(axis=1))
 
 
 def _highest_held(board: Board, rail: Rail) -> float:

@@ -101,3 +101,22 @@ def look_log_chance(hypothesis: Hypothesis, value: ReadingValue) -> float:
         word, sign = struck.fault.sign_word, struck.fault.sign / 100.0
         chances[word] = 1.0 - (1.0 - chances[word]) * (1.0 - sign)
     return float(sum(np.log(chance if word in seen else 1.0 - chance) for word, chance in chances.items()))
+
+
+def log_sum(values: Array) -> Array:
+    """Logarithm of the sum of exponentials over the last axis, without overflow."""
+    top = values.max(axis=-1)
+    return np.asarray(top + np.log(np.exp(values - top[..., None]).sum(axis=-1)))
+
+
+def effective_number(joint: Array) -> Array:
+    """How many equal specimens those of log weight `joint` are worth, over the last axis: (Σw)² / Σw² (Kish)."""
+    return np.asarray(np.exp(2.0 * log_sum(joint) - log_sum(2.0 * joint)))
+
+
+def tempered(joint: Array, number: float) -> Array:
+    """Weights of log weight `joint` (n,), adding up to one, flattened by a power under one until `number` specimens count."""
+    power, wanted = 1.0, min(number, joint.size / 2.0)
+    while power > 1e-3 and effective_number(power * joint) < wanted:
+        power *= 0.7
+    return np.asarray(np.exp(power * joint - log_sum(power * joint)))

@@ -103,8 +103,8 @@ def bleeder_read(readings: Sequence[Reading]) -> float | None:
 def zener_open_of(posterior: Posterior) -> dict[str, float]:
     """The probability that each rail's zener is open, alone or with another fault, by the rail's name."""
     chances: dict[str, float] = {}
-    for item, probability in zip(posterior.evidence, posterior.probabilities, strict=True):
-        for struck in item.hypothesis.faults:
+    for hypothesis, probability in zip(posterior.hypotheses, posterior.probabilities, strict=True):
+        for struck in hypothesis.faults:
             if struck.fault.name == "zener-open":
                 chances[struck.place.name] = chances.get(struck.place.name, 0.0) + float(probability)
     return chances

@@ -38,8 +38,8 @@ def zener(voltage: Array, marked: Array) -> Branch:
     if not np.any(voltage < 0.0):
         return reverse, slope
     forward, forward_slope = junction(-voltage, known.DIODE_DROP, known.DIODE_CURRENT, known.DIODE_SLOPE)
-    fitted = np.isfinite(marked)
-    return reverse - np.where(fitted, forward, 0.0), slope + np.where(fitted, forward_slope, 0.0)
+    turned = np.isfinite(marked) & (voltage < 0.0)
+    return reverse - np.where(turned, forward, 0.0), slope + np.where(turned, forward_slope, 0.0)
 
 
 def resistor(voltage: Array, resistance: Array) -> Branch:

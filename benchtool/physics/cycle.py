@@ -180,6 +180,8 @@ class Cycle:
         """
         rails, rectifier, pulsed = held.rails, self.rectifier, self._pulsed(step)
         sources = list(self.reservoir * held.reservoirs)
+        moved, flowed, flowed_slope = np.zeros((3, self.specimens.count))
+        moves = np.ones(self.specimens.count, dtype=bool)
         for number in range(self.pace.rounds):
             balance = Balance(self.straight, rails, sources)
             for index, rail in enumerate(self.specimens.shape.rails):
@@ -195,11 +197,15 @@ class Cycle:
                 move[0] = target - rails[0]
             if number >= DAMPED_FROM:
                 move = move * DAMPING[number % len(DAMPING)]
+            move = move * moves  # one that stands stays, whatever company it is in
             rails = rails + move
-            moved = np.abs(move).max(axis=0)
-            if np.all(moved < self.pace.stands):
+            moved = np.where(moves, np.abs(move).max(axis=0), moved)
+            flowed = np.where(moves, current + slope * move[0], flowed)
+            flowed_slope = np.where(moves, slope, flowed_slope)
+            moves = moves & (moved >= self.pace.stands)
+            if not moves.any():
                 break
-        return rails, (current + slope * move[0], slope), moved
+        return rails, (flowed, flowed_slope), moved
 
     def _landing(self, rails: Array, move: Array, balance: Balance) -> Array:
         """`move` [V] cut short of where exponentials would throw it back: under common, and over a zener's knee, where it lands

@@ -158,7 +158,7 @@ def worst_voltage(board: Board, rail: Rail) -> float:
     on whatever feeds it: fed from beyond its rating it may break through.
     """
     if rail.fed_through not in ("resistor", "regulator"):
-        pumps = board.rectifier == "half-wave" and board.dropper.kind != "resistor"
+        pumps = board.rectifier not in ("bridge", "half-wave-zener") and board.dropper.kind != "resistor"
         return highest_crest(board) * (2.0 if pumps else 1.0)
     feeding = board.rail(rail.fed_by)
     held = None if rail.zener is None else nominal_voltage(board, feeding)

@@ -1,6 +1,6 @@
 """The rectifier for one step of the mains cycle: what it passes on into the first rail, in every state of its junctions.
 
-It is fed by an open-circuit voltage behind a resistance (mains, dropper and whatever stands across its input, as `dropper.py`
+It is fed by an open-circuit voltage behind a resistance (mains, dropper and whatever stands across its input, as `cycle.py`
 leaves them for this step). Its own diodes drop what they dropped at the current of the step before, by their exponential law:
 against the crest of the mains that is exact enough, and it leaves the rail's equation linear but for the zeners.
 """
@@ -35,17 +35,21 @@ class Legs:
     node_shorted: bool = False
 
 
-LEGS: dict[tuple[bool, Junction], Legs] = {
-    (True, Junction.GOOD): Legs(full_wave=True, diodes=2, returns=False),
-    (True, Junction.SERIES_OPEN): Legs(full_wave=False, diodes=2, returns=False),
-    (True, Junction.SERIES_SHORT): Legs(full_wave=False, diodes=1, returns=True),
-    (False, Junction.GOOD): Legs(full_wave=False, diodes=1, returns=True),
-    (False, Junction.SERIES_OPEN): Legs(full_wave=False, diodes=None, returns=True),
-    (False, Junction.SERIES_SHORT): Legs(full_wave=False, diodes=0, returns=True),
-    (False, Junction.RETURN_OPEN): Legs(full_wave=False, diodes=1, returns=False),
-    (False, Junction.RETURN_SHORT): Legs(full_wave=False, diodes=1, returns=True, node_shorted=True),
+BRIDGE: dict[Junction, Legs] = {
+    Junction.GOOD: Legs(full_wave=True, diodes=2, returns=False),
+    Junction.SERIES_OPEN: Legs(full_wave=False, diodes=2, returns=False),
+    Junction.SERIES_SHORT: Legs(full_wave=False, diodes=1, returns=True),
 }
-"""By (bridge, junction state). In a bridge all four junctions are alike; one shorted makes a half-wave rectifier of it."""
+"""All four junctions are alike; one shorted makes a half-wave rectifier of it."""
+HALF_WAVE: dict[Junction, Legs] = {
+    Junction.GOOD: Legs(full_wave=False, diodes=1, returns=True),
+    Junction.SERIES_OPEN: Legs(full_wave=False, diodes=None, returns=True),
+    Junction.SERIES_SHORT: Legs(full_wave=False, diodes=0, returns=True),
+    Junction.RETURN_OPEN: Legs(full_wave=False, diodes=1, returns=False),
+    Junction.RETURN_SHORT: Legs(full_wave=False, diodes=1, returns=True, node_shorted=True),
+}
+LEGS = {"bridge": BRIDGE, "half-wave": HALF_WAVE, "half-wave-zener": HALF_WAVE}
+"""By the board's rectifier, then by junction state; a half-wave-zener's way back is its zener."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -61,8 +65,7 @@ class Rectifier:
     """The rectifier of specimens that share one junction state."""
 
     def __init__(self, specimens: Specimens) -> None:
-        bridge = specimens.shape.rectifier == "bridge"
-        self.legs = LEGS[bridge, Junction(int(specimens.junction[0]))]
+        self.legs = LEGS[specimens.shape.rectifier][Junction(int(specimens.junction[0]))]
         at_node = specimens.shape.zener_at_node
         self.zener = specimens.zener[0] if at_node and self.legs.diodes != 0 else None
         self.drop = np.full(specimens.count, known.DIODE_DROP)

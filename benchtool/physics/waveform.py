@@ -83,23 +83,30 @@ class _Figures:
         self.converged: Flags = np.zeros(count, dtype=bool)
 
     def keep(self, index: NDArray[np.intp], cycle: Cycle, measured: Measured, converged: Flags) -> None:
-        """The figures of the specimens at `index`."""
-        rails, single, steps = self.rails, self.singles, cycle.steps
-        rails["mean"][:, index] = measured.rail / steps
-        rails["square"][:, index] = measured.rail_square / steps
-        rails["magnitude"][:, index] = measured.rail_magnitude / steps
-        rails["pp"][:, index] = measured.highest - measured.lowest
-        rails["zener"][:, index] = measured.zener / steps
-        rails["power"][:, index] = measured.zener_power / steps
-        single["supply"][index] = measured.supply / steps
-        single["line"][index] = measured.line / steps
-        single["line_square"][index] = measured.line_square / steps
-        single["real"][index] = (measured.real - cycle.added * measured.line_square) / steps
-        single["dropper"][index] = measured.dropper / steps
-        single["dropper_square"][index] = measured.dropper_square / steps
-        single["dropper_magnitude"][index] = measured.dropper_magnitude / steps
-        self.converged[index] = converged
+        """The figures of the specimens at `index`, unless an earlier cycle of theirs repeated already."""
+        new, steps = ~self.converged[index], cycle.steps
+        here = index[new]
 
+        def rails(name: str, sums: Array) -> None:
+            self.rails[name][:, here] = sums[:, new] / steps
+
+        def single(name: str, sums: Array) -> None:
+            self.singles[name][here] = sums[new] / steps
+
+        rails("mean", measured.rail)
+        rails("square", measured.rail_square)
+        rails("magnitude", measured.rail_magnitude)
+        rails("zener", measured.zener)
+        rails("power", measured.zener_power)
+        self.rails["pp"][:, here] = (measured.highest - measured.lowest)[:, new]
+        single("supply", measured.supply)
+        single("line", measured.line)
+        single("line_square", measured.line_square)
+        single("real", measured.real - cycle.added * measured.line_square)
+        single("dropper", measured.dropper)
+        single("dropper_square", measured.dropper_square)
+        single("dropper_magnitude", measured.dropper_magnitude)
+        self.converged[here] = converged[new]
 
     def take_over(self, index: NDArray[np.intp], other: _Figures) -> None:
         """All figures of `other`, which are those of the specimens at `index`."""
@@ -124,13 +131,14 @@ def _settle_alike(network: Network, rails: Array, pace: Pace, effort: Effort) ->
     held, centre = first_guess(cycle, rails), Centre(rails, np.zeros(count))
     reach, before = FARTHEST * np.abs(rails) + FARTHEST, np.zeros_like(rails)
     for number in range(effort.most_cycles):
-        started = held.reservoirs
+        started = held
         held, measured = cycle.run(held, centre)
-        drift = held.reservoirs - started
+        drift = held.reservoirs - started.reservoirs
+        charged = np.abs(held.dropper - started.dropper) <= effort.share * cycle.specimens.crest + effort.volts
         ahead = np.clip(_ahead(cycle.network, measured, pace.steps, drift), -reach, reach)
         to_go = np.maximum(np.abs(ahead), np.abs(drift)).max(axis=0)
         allowed = effort.share * np.abs(measured.rail / pace.steps).max(axis=0) + effort.volts
-        repeats = (to_go <= allowed) & (measured.moved <= SOLVED_VOLTS) & (number > 0)
+        repeats = (to_go <= allowed) & charged & (measured.moved <= SOLVED_VOLTS) & (number > 0)
         figures.keep(rest, cycle, measured, repeats)
         centre = Centre(measured.rail / pace.steps, measured.dropper / pace.steps)
         if repeats.all():
