@@ -6,6 +6,7 @@ Command line and screens call this and grow no copy of it.
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
+from functools import lru_cache
 
 import numpy as np
 
@@ -13,6 +14,7 @@ from benchtool.board import Board
 from benchtool.case import Case
 from benchtool.catalogue.cautions import cautions
 from benchtool.diagnosis.checks import next_checks
+from benchtool.diagnosis.crowd import BOARDS_KEPT
 from benchtool.diagnosis.disagreement import disagreements
 from benchtool.diagnosis.effective import effective_of
 from benchtool.diagnosis.evidence import Because, evidence_of, fails_to_run
@@ -53,8 +55,14 @@ def assess(case: Case) -> Assessment:
 
 def states_of(board: Board, readings: Sequence[Reading]) -> tuple[State, ...]:
     """The board as marked: all switched loads off, all on, then every state a reading was taken in, each once."""
-    marked, healthy = Bench(as_marked(board)), Bench(population(board, BAND_DRAWN))
+    marked, healthy = _yardsticks(board, BAND_DRAWN)
     return tuple(_state(board, on, marked, healthy) for on in _states_wanted(board, readings))
+
+
+@lru_cache(maxsize=BOARDS_KEPT)
+def _yardsticks(board: Board, count: int) -> tuple[Bench, Bench]:
+    """The board as marked, and healthy ones, kept for the next reading."""
+    return Bench(as_marked(board)), Bench(population(board, count))
 
 
 def _states_wanted(board: Board, readings: Sequence[Reading]) -> Iterator[tuple[str, ...]]:

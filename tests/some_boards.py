@@ -14,6 +14,7 @@ from benchtool.catalogue.readings import READING_KINDS
 from benchtool.diagnosis import closer, crowd, effective, posterior
 from benchtool.observed import Reading, ReadingValue
 from benchtool.physics import budget, mean_value, waveform
+from benchtool.physics.cycle import Pace
 
 CONTRACT = casefile.loads((Path(__file__).parent / "data" / "contract.toml").read_text(encoding="utf-8"))
 """The case file of the case format's section 1."""
@@ -91,7 +92,7 @@ def draw_few(monkeypatch: pytest.MonkeyPatch, count: int, *, coarse: bool = Fals
         monkeypatch.setattr(mean_value, "MOST_STEPS", 12)
         monkeypatch.setattr(mean_value, "WARMING_STEPS", 1)
         monkeypatch.setattr(budget, "BISECTIONS", 2)
-        rough = waveform.Effort(waveform.Pace(8, 3, 0.1), None, most_cycles=2, share=0.01, volts=0.1)
+        rough = waveform.Effort(Pace(8, 3, 0.1), None, most_cycles=2, share=0.01, volts=0.1, charge=1.0)
         monkeypatch.setattr(waveform, "FIGURES", rough)
         monkeypatch.setattr(waveform, "CROWD", rough)
 
@@ -99,6 +100,8 @@ def draw_few(monkeypatch: pytest.MonkeyPatch, count: int, *, coarse: bool = Fals
 def forget(monkeypatch: pytest.MonkeyPatch) -> None:
     """What is kept for a board, kept for this test only."""
     monkeypatch.setattr(posterior, "crowd_of", lru_cache(crowd.Crowd))
+    monkeypatch.setattr(assessment, "_yardsticks", lru_cache(assessment._yardsticks.__wrapped__))
+    monkeypatch.setattr(assessment, "budget_of", budget.budget_of.__wrapped__)
     monkeypatch.setattr(closer, "_bench", lru_cache(closer._bench.__wrapped__))
 
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from dataclasses import replace
 from typing import Any
 
 import numpy as np
@@ -13,6 +14,10 @@ from scipy.optimize import brentq
 
 from benchtool.physics import branches
 from benchtool.physics import constants as known
+from benchtool.physics.mean_value import balance_at
+from benchtool.physics.network import network_of
+from benchtool.physics.specimens import as_marked
+from tests.small_boards import board
 
 
 def test_junction_stands_at_its_mark_and_gains_a_decade_for_its_slope() -> None:
@@ -37,15 +42,18 @@ def test_junction_goes_on_as_its_tangent() -> None:
 def test_zener_law() -> None:
     # 5 mA at the mark, a factor e for 60 mV, forward like a diode: 20 mA at -0.7 V (the case format's section 4).
     volts = np.array([18.0, 18.06, -0.7])
-    current, _ = branches.zener(volts, np.full(3, 18.0), np.full(3, np.inf))
+    current, _ = branches.zener(volts, np.full(3, 18.0))
     np.testing.assert_allclose(current, [0.005, 0.005 * np.e, -0.020], rtol=1e-9)
-    # Not fitted: nothing, either way. Shorted by 10 ohm: Ohm's law on top.
-    np.testing.assert_allclose(branches.zener(np.array([-50.0, 300.0]), np.full(2, np.inf), np.full(2, np.inf))[0], 0.0)
-    np.testing.assert_allclose(branches.zener(np.array([2.0]), np.array([18.0]), np.array([10.0]))[0], 0.2, rtol=1e-9)
+    # Not fitted: nothing, either way.
+    np.testing.assert_allclose(branches.zener(np.array([-50.0, 300.0]), np.full(2, np.inf))[0], 0.0)
+    # Shorted by 10 ohm: Ohm's law on top of its own, 200 mA at 2 V beside the meter's 0.2 µA.
+    shorted = replace(as_marked(board()), zener_short=np.full((1, 1), 10.0))
+    balance = balance_at(network_of(shorted, (), warm=False), np.array([[2.0]]), ())
+    np.testing.assert_allclose(balance.surplus[0], -0.2 - 2e-7, rtol=1e-9)
 
 
 def zener_branch(volts: np.ndarray[Any, Any]) -> branches.Branch:
-    return branches.zener(volts, np.full_like(volts, 5.1), np.full_like(volts, np.inf))
+    return branches.zener(volts, np.full_like(volts, 5.1))
 
 
 BRANCHES: dict[str, Callable[[Any], branches.Branch]] = {

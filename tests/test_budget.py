@@ -22,9 +22,10 @@ from benchtool.physics.budget import (
     normal_load,
     regulating,
 )
-from benchtool.physics.mean_value import settle
+from benchtool.physics.mean_value import means
 from benchtool.physics.specimens import as_marked, population, take
 from benchtool.physics.supply import feed_of, supply_current
+from benchtool.physics.waveform import settle
 from tests.small_boards import board, coil, draws, rail, stacked
 
 STACK = stacked(18.0, 5.1)
@@ -166,8 +167,8 @@ def test_at_the_drop_out_value_the_zener_carries_a_tenth_of_a_milliampere(rectif
     # "A rail regulates while its zener still carries at least 0.1 mA": a little less dropper and it does not.
     made = board(rectifier, loads=(replace(coil(2400.0), switched=False),))
     found = dropout_capacitance(as_marked(made), ())
-    at = settle(replace(as_marked(made), capacitance=found), ())
-    assert float(chain_current(at.zener_current, at.specimens.shape, 0)[0]) == pytest.approx(1e-4, rel=0.05)
+    at = means(replace(as_marked(made), capacitance=found), ())
+    assert float(chain_current(at.zener_current, at.network.specimens.shape, 0)[0]) == pytest.approx(1e-4, rel=0.05)
     for share, holds in ((0.99, False), (1.01, True)):
         state = regulating(settle(replace(as_marked(made), capacitance=share * found), ()), 0)
         assert state is not None
@@ -209,13 +210,13 @@ def test_no_load_needs_next_to_no_dropper_and_too_much_load_none_will_do() -> No
 def test_capacitance_giving_finds_what_is_asked_for() -> None:
     # The dropper whose line current is that of the marked one is the marked one.
     marked = as_marked(board(inrush=100.0, loads=(draws(0.005),)))
-    target = settle(marked, ()).line_current
+    target = means(marked, ()).line_current
     shifted = replace(marked, capacitance=0.5 * marked.capacitance)
-    found = capacitance_giving(shifted, (), False, lambda settled: settled.line_current, target)
+    found = capacitance_giving(shifted, (), False, lambda at: at.line_current, target)
     assert float(found[0]) == pytest.approx(0.47e-6, rel=1e-4)
     # Beyond ten times its own: not a number. What it shows with next to none already: nil.
-    assert np.isnan(capacitance_giving(marked, (), False, lambda settled: settled.line_current, 100.0 * target)[0])
-    assert capacitance_giving(marked, (), False, lambda settled: settled.line_current, 0.0 * target)[0] == 0.0
+    assert np.isnan(capacitance_giving(marked, (), False, lambda at: at.line_current, 100.0 * target)[0])
+    assert capacitance_giving(marked, (), False, lambda at: at.line_current, 0.0 * target)[0] == 0.0
 
 
 RAILS = st.floats(0.0, 60.0)

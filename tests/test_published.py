@@ -2,8 +2,8 @@
 
 Each row is answered by a function that `assess` itself reaches, never by a formula retyped here. The way down:
 assess → budget_of → supply_current → laws.capacitor_current, laws.rule_of_thumb_current → laws.reactance;
-assess → effective_of → back_solved_capacitance → laws.capacitance_for;
-assess → states_of → settle → supply_current, mains_side → laws.capacitor_line_current; and mains_power;
+assess → effective_of → back_solved_capacitance → laws.capacitance_for; and means → supply_current, line_current;
+assess → states_of → settle, the cycle step by step; and mains_power;
 assess → safety_findings → discharge_of → laws.discharge_time, bleeder_share → laws.string_share;
 assess → posterior_of → settle(warm) → laws.copper_ratio.
 """
@@ -27,11 +27,12 @@ from benchtool.diagnosis.effective import effective_of
 from benchtool.diagnosis.safety import safety_findings
 from benchtool.physics import laws
 from benchtool.physics.budget import Budget, back_solved_capacitance, budget_of, regulating
-from benchtool.physics.mean_value import settle
+from benchtool.physics.discharge import discharge_of
 from benchtool.physics.settled import Settled
 from benchtool.physics.specimens import as_marked
-from benchtool.physics.stress import bleeder_share, discharge_of
-from benchtool.physics.supply import feed_of, mains_side, supply_current
+from benchtool.physics.stress import bleeder_share
+from benchtool.physics.supply import feed_of, line_current, supply_current
+from benchtool.physics.waveform import settle
 from tests.small_boards import board, coil, rail, stacked
 
 HERE = Path(__file__).parent
@@ -67,9 +68,9 @@ def back_solved(volts: float, hertz: float, current: float, rail_voltage: float)
 
 
 def mean_over_rms(rectifier: str) -> float:
-    # assess → settle → supply_current and mains_side. A rail at minus two diode drops: the rectifier sees no voltage at all.
+    # assess → effective_of → means → supply_current, line_current. At minus two diode drops the rectifier sees no voltage.
     feed, nil = feed_of(as_marked(board(rectifier))), np.array([-1.4])
-    return float(supply_current(feed, nil)[0][0] / mains_side(feed, nil).line_current[0])
+    return float(supply_current(feed, nil)[0][0] / line_current(feed, nil)[0])
 
 
 def drained(capacitance: float, bleeder: float) -> Board:
@@ -90,7 +91,7 @@ def relay_demand(capacitance: float, power: float) -> float | None:
 
 
 def heat_of_resistor_dropper(resistance: float, volts: float, zener: float) -> float:
-    # assess → states_of → settle → mains_side → laws.resistor_line_current
+    # assess → states_of → settle
     made = one_rail(zener, dropper=Dropper(kind="resistor", resistance=resistance), volts=volts)
     return float(settled_of(made).line_current[0] ** 2) * resistance
 

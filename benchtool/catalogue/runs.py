@@ -51,11 +51,12 @@ def _enough(settled: Settled, board: Board, load: int, warm: bool) -> Array:
 
 
 def _alive_from(board: Board, rail: int) -> float:
-    """Volts on rail `rail` above which a controller lives."""
-    zener = board.rails[rail].zener
-    if zener is None or isinstance(zener.voltage, Unknown):
+    """Volts on rail `rail` above which a controller lives: 60 % of its zener, or of what its regulator holds, or 4 V."""
+    zener, regulated = board.rails[rail].zener, board.rails[rail].regulated_voltage
+    held = regulated if zener is None else zener.voltage
+    if held is None or isinstance(held, Unknown):
         return known.LIVES_FROM_VOLTS
-    return min(known.LIVES_FROM_SHARE * zener.voltage, known.LIVES_FROM_VOLTS)
+    return min(known.LIVES_FROM_SHARE * held, known.LIVES_FROM_VOLTS)
 
 
 def _controller_lives(settled: Settled, board: Board) -> Array:

@@ -92,7 +92,7 @@ def _mark(specimens: Specimens, board: Board) -> Array:
 
 def dropper_open(specimens: Specimens, scene: Scene) -> Specimens:
     """Under 2 % of the mark; a resistor dropper conducts nothing."""
-    left = _mark(specimens, scene.board) * 0.02 * scene.severity**3
+    left = _mark(specimens, scene.board) * 0.02 * np.maximum(scene.severity, 0.0) ** 3
     return replace(specimens, capacitance=left, dropper_resistance=_all(specimens, np.inf))
 
 
@@ -113,7 +113,7 @@ def shunt_lost(specimens: Specimens, scene: Scene) -> Specimens:
 
 def shunt_open(specimens: Specimens, scene: Scene) -> Specimens:
     """Under 2 % of the mark."""
-    return replace(specimens, shunt=_shunt(specimens, scene) * 0.02 * scene.severity**3)
+    return replace(specimens, shunt=_shunt(specimens, scene) * 0.02 * np.maximum(scene.severity, 0.0) ** 3)
 
 
 def shunt_short(specimens: Specimens, scene: Scene) -> Specimens:

@@ -99,14 +99,16 @@ def next_checks(posterior: Posterior, taken: Sequence[Check], *, power_allowed: 
         condition = READING_KINDS[check.what].condition
         if condition == "live" and not power_allowed:
             continue
-        gain = weigher.outcomes(check).gain()
-        if gain > WORTH:
-            found.append(NextCheck(check, condition, gain, minutes_of(check, last)))
-    return tuple(sorted(found, key=_usefulness, reverse=True))
+        outcomes = weigher.outcomes(check)
+        use = outcomes.gain_if_doubted()
+        if use > WORTH:
+            found.append((use, NextCheck(check, condition, outcomes.gain(), minutes_of(check, last))))
+    return tuple(item for _, item in sorted(found, key=_usefulness, reverse=True))
 
 
-def _usefulness(item: NextCheck) -> float:
-    return item.gain * (LIVE_PENALTY if item.condition == "live" else 1.0) / item.minutes
+def _usefulness(item: tuple[float, NextCheck]) -> float:
+    use, check = item
+    return use * (LIVE_PENALTY if check.condition == "live" else 1.0) / check.minutes
 
 
 class _Weigher:

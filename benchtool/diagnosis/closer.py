@@ -24,8 +24,8 @@ REDRAWN = 512
 POOR = 0.04
 """Share of its specimens that a hypothesis must be worth, or it is drawn once more, closer still."""
 LOOKED_AT = (8.0, 6.0, 4.0, 4.0)
-"""Effective number of specimens around which it is drawn, time after time: not the best one alone, for which of them that is sharp
-readings leave to chance.
+"""Effective number of specimens around which it is drawn, time after time: not the best one alone, for sharp readings leave it to
+chance which of them that is.
 """
 COUNTS_FROM = 0.03
 """Share of the best of these from which a severity counts."""
@@ -54,7 +54,7 @@ def drawn_closer(
     crowd: Crowd, meter: Meter, readings: tuple[Reading, ...], joint: Array, leaders: Sequence[int]
 ) -> dict[int, Closer]:
     """The hypotheses `leaders` drawn again, by number; `joint` (hypotheses, each): their log weights as first drawn."""
-    boxes = {index: WHOLE for index in leaders}
+    boxes = dict.fromkeys(leaders, WHOLE)
     joints = {index: joint[index] for index in leaders}
     found: dict[int, Closer] = {}
     for number in LOOKED_AT:

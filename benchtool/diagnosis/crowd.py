@@ -33,6 +33,10 @@ USUAL_SHARE = 0.7
 """Share of the specimens whose mains stand where they do while reading; the rest go as far as the mains vary, for a mains reading
 that says so.
 """
+TAILS = ((0.0, 0.02, 0.98, 1.0), (-0.1, 0.0, 1.0, 1.1))
+"""A coordinate, and the severity it stands for: two in a hundred faults are a little worse or milder than their range says, by as
+much as a tenth of it. Common practice, no source.
+"""
 RULED_OUT = -60.0
 """Logarithm of the weight of specimens that do not count."""
 OF_THE_MAINS = ("mains-low", "mains-high")
@@ -119,7 +123,7 @@ def struck(board: Board, hypothesis: Hypothesis, healthy: Specimens, box: Box = 
 
     def even(number: int) -> Array:
         low, high = sides.get(number, (0.0, 1.0))
-        return low + (high - low) * coordinate(number, healthy.count)
+        return np.interp(low + (high - low) * coordinate(number, healthy.count), *TAILS)
 
     specimens = healthy
     for number, fault in enumerate(hypothesis.faults):

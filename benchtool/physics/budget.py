@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass, replace
+from functools import lru_cache
 
 import numpy as np
 
@@ -50,6 +51,7 @@ def agreed(figures: Array) -> float | None:
     return float(np.mean(figures))
 
 
+@lru_cache(maxsize=8)
 def budget_of(board: Board) -> Budget:
     """The budget of `board` as marked."""
     marked, on = as_marked(board), board.switched_loads()
@@ -144,6 +146,7 @@ def _marked_draw(specimens: Specimens, number: int, voltage: Array) -> Array:
     return np.asarray(np.maximum(voltage - over, 0.0) / specimens.load_resistance[number])
 
 
+@lru_cache(maxsize=8)
 def normal_load(board: Board) -> float:
     """The board's normal load [A], for faults whose size is told in it: the demand, or 10 mA where it cannot be known."""
     figure = demand(board, as_marked(board))

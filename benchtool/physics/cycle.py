@@ -122,8 +122,7 @@ class Cycle:
         bypassed = np.minimum(reactive**-2.0, 1.0)
         adds = (1.0 - bypassed) / (1.0 + bypassed) ** 2
         half_step = np.where(fitted, 0.5 * self.seconds * adds / np.maximum(specimens.capacitance, TINY), 0.0)
-        taken = np.minimum(series, half_step)
-        self.added = half_step - taken
+        self.taken = taken = np.minimum(series, half_step)
         charge = specimens.capacitance / self.seconds
         self.behind = 1.0 / np.maximum(charge + 1.0 / specimens.parallel_resistance, 1e-15)
         self.keeps = charge * self.behind
@@ -168,11 +167,21 @@ class Cycle:
         reservoirs = held.reservoirs + self.reservoir * (rails - held.reservoirs) * self.charge
         measured.add_rails(rails)
         measured.add_line(line, mains, dropper)
+        measured.real -= self._lost_to_the_step(line, dropper - held.dropper, input_voltage - held.input)
         measured.supply += current
         measured.supply_slope += slope
         measured.moved = np.maximum(measured.moved, moved)
         self._zeners(measured, rails, node_zener, node_volts, through)
+        if rectifier.zener is not None:
+            measured.zener_power[0] += input_voltage**2 / self.specimens.zener_short[0]
         return Held(dropper, input_voltage, reservoirs, rails)
+
+    def _lost_to_the_step(self, line: Array, dropper: Array, across_input: Array) -> Array:
+        """Power [W] that the implicit step burns and the circuit does not, (n,): ½·C·ΔV² a step where a capacitor's voltage moves
+        by `dropper` or `across_input` [V], less what the resistance taken out would have burnt at `line` [A].
+        """
+        lost = 0.5 * self.specimens.capacitance / self.seconds * dropper**2 + 0.5 * self.shunt * across_input**2
+        return lost - self.taken * line**2
 
     def _balance(self, step: int, drive: Array, held: Held) -> tuple[Array, Branch, Array]:
         """The rails at the end of the step (rails, n) [V], what flowed into the first and its slope (n,) [A, S], and by how much

@@ -26,7 +26,7 @@ from benchtool.physics.network import (
 )
 from benchtool.physics.shape import TO_COMMON
 from benchtool.physics.specimens import Specimens
-from benchtool.physics.supply import feed_of, mains_side, supply_current
+from benchtool.physics.supply import feed_of, line_current, supply_current
 
 MOST_STEPS = 80
 CUTS = 7
@@ -61,7 +61,7 @@ class Means:
     @property
     def line_current(self) -> Array:
         """Current in the mains lead [A RMS], (n,)."""
-        return mains_side(feed_of(self.network.specimens), self.rails[0]).line_current
+        return line_current(feed_of(self.network.specimens), self.rails[0])
 
     @property
     def supply_current(self) -> Array:

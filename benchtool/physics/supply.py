@@ -110,39 +110,11 @@ def _current(feed: Feed, rail: Array) -> Array:
     return np.where(feed.connected, np.where(feed.blocked_by_dc, blocked, alternating), 0.0)
 
 
-@dataclass(frozen=True, slots=True)
-class MainsSide:
-    """What a meter sees before the rectifier, each (n,): line current [A RMS], dropper voltage [V RMS, V DC]."""
-
-    line_current: Array
-    dropper_voltage: Array
-    dropper_dc: Array
-
-
-def mains_side(feed: Feed, rail: Array) -> MainsSide:
-    """Line current and dropper voltages with the first rail at `rail` [V]."""
+def line_current(feed: Feed, rail: Array) -> Array:
+    """Current in the mains lead [A RMS] with the first rail at `rail` [V]; (n,)."""
     specimens = feed.specimens
     swing = np.maximum(half_swing(specimens, rail), 0.0)
-    k = laws.crest_factor_k(feed.series, feed.capacitance, specimens.frequency)
-    crest = k * feed.crest
-    across_capacitor = laws.capacitor_voltage(crest, swing)
-    with np.errstate(divide="ignore", invalid="ignore"):
-        capacitive = laws.capacitor_line_current(crest, specimens.frequency, feed.capacitance, swing)
-        resistive = laws.resistor_line_current(feed.crest, feed.parallel + feed.series, swing)
-        by_resistance = resistive * np.where(np.isfinite(feed.parallel), feed.parallel, 0.0)
-    share = np.hypot(capacitive, 1e-15) ** 2 / (np.hypot(capacitive, 1e-15) ** 2 + resistive**2 + 1e-30)
-    flows = feed.connected & ~feed.blocked_by_dc
-    return MainsSide(
-        line_current=np.where(flows, np.hypot(capacitive, resistive), 0.0),
-        dropper_voltage=np.where(flows, share * across_capacitor + (1.0 - share) * by_resistance, 0.0),
-        dropper_dc=np.where(feed.connected, _standing_dc(feed, rail), 0.0),
-    )
-
-
-def _standing_dc(feed: Feed, rail: Array) -> Array:
-    """Mean voltage over the dropper [V], magnitude: the crest where it blocks, half the lopsidedness of a half-wave swing."""
-    specimens = feed.specimens
-    both_ways = (specimens.shape.rectifier == "bridge") & (specimens.junction != Junction.SERIES_SHORT)
-    lopsided = np.where(both_ways, 0.0, np.maximum(rail, 0.0) / 2.0)
-    charged = np.where(specimens.capacitance > 0.0, np.maximum(specimens.crest - _threshold(specimens, rail), 0.0), 0.0)
-    return np.where(feed.blocked_by_dc, charged, lopsided)
+    crest = laws.crest_factor_k(feed.series, feed.capacitance, specimens.frequency) * feed.crest
+    capacitive = laws.capacitor_line_current(crest, specimens.frequency, feed.capacitance, swing)
+    resistive = laws.resistor_line_current(feed.crest, feed.parallel + feed.series, swing)
+    return np.where(feed.connected & ~feed.blocked_by_dc, np.hypot(capacitive, resistive), 0.0)

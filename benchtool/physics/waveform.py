@@ -19,13 +19,16 @@ from benchtool.physics.mean_value import Means, mean_pulses, means
 from benchtool.physics.network import Balance, Network, add_loads, add_regulators, load_figures
 from benchtool.physics.rectifier import Rectifier
 from benchtool.physics.settled import Settled
+from benchtool.physics.shape import TO_COMMON
 from benchtool.physics.specimens import Specimens
+from benchtool.physics.supply import feed_of, supply_current
 
 
 @dataclass(frozen=True, slots=True)
 class Effort:
     """What a settled cycle may cost: `fine` steps, if any, are for specimens whose current comes in short pulses or whose rail is
-    rough; a cycle repeats when no rail has further to go than `share` of itself, or `volts`.
+    rough; a cycle repeats when no rail has further to go than `share` of itself, or `volts`, and its reservoir gained or lost no
+    more than the share `charge` of the supply.
     """
 
     coarse: Pace
@@ -33,11 +36,12 @@ class Effort:
     most_cycles: int
     share: float
     volts: float
+    charge: float
 
 
-FIGURES = Effort(Pace(64, 13, 3e-3), Pace(256, 13, 3e-3), most_cycles=24, share=5e-5, volts=3e-4)
+FIGURES = Effort(Pace(64, 13, 2e-3), Pace(256, 13, 5e-4), most_cycles=32, share=5e-5, volts=3e-4, charge=0.005)
 """For what is shown as a figure."""
-CROWD = Effort(Pace(32, 5, 1e-2), None, most_cycles=8, share=1e-3, volts=5e-3)
+CROWD = Effort(Pace(32, 5, 1e-2), None, most_cycles=8, share=1e-3, volts=5e-3, charge=0.05)
 """For many specimens that are compared with a meter."""
 PULSED, ROUGH = 1.8, 0.05
 """RMS over mean of the line current (1.11 for a sine), and ripple over mean of a rail, from which the fine steps are taken."""
@@ -45,8 +49,10 @@ CHUNK = 4096
 """Specimens stepped together: as many as a processor's cache holds."""
 SOLVED_VOLTS = 0.05
 """Worst move left in a step's last round with which the step still counts as solved [V]."""
-FARTHEST, CLOSER = 0.3, 0.35
-"""Share of itself, and volts, by which a rail is moved ahead at most; and what is left of that when it turns back."""
+LEAST_CURRENT = 1e-6
+"""Current that a reservoir may gain or lose however little is supplied [A]."""
+FARTHEST, CLOSER, FARTHER = 0.3, 0.35, 1.5
+"""Share of itself, and volts, by which a rail is moved ahead at most; times that when it turns back, and when it goes on."""
 
 
 def settle(specimens: Specimens, on: tuple[str, ...], *, warm: bool = False, effort: Effort = FIGURES) -> Settled:
@@ -102,7 +108,7 @@ class _Figures:
         single("supply", measured.supply)
         single("line", measured.line)
         single("line_square", measured.line_square)
-        single("real", measured.real - cycle.added * measured.line_square)
+        single("real", measured.real)
         single("dropper", measured.dropper)
         single("dropper_square", measured.dropper_square)
         single("dropper_magnitude", measured.dropper_magnitude)
@@ -138,13 +144,15 @@ def _settle_alike(network: Network, rails: Array, pace: Pace, effort: Effort) ->
         ahead = np.clip(_ahead(cycle.network, measured, pace.steps, drift), -reach, reach)
         to_go = np.maximum(np.abs(ahead), np.abs(drift)).max(axis=0)
         allowed = effort.share * np.abs(measured.rail / pace.steps).max(axis=0) + effort.volts
+        gained = (np.abs(drift) * cycle.specimens.reservoir).max(axis=0) * cycle.specimens.frequency
+        charged &= gained <= effort.charge * np.abs(measured.supply) / pace.steps + LEAST_CURRENT
         repeats = (to_go <= allowed) & charged & (measured.moved <= SOLVED_VOLTS) & (number > 0)
         figures.keep(rest, cycle, measured, repeats)
         centre = Centre(measured.rail / pace.steps, measured.dropper / pace.steps)
         if repeats.all():
             break
         held = replace(held, reservoirs=held.reservoirs + ahead, rails=held.rails + ahead)
-        reach, before = np.where(ahead * before < 0.0, CLOSER * reach, reach), ahead
+        reach, before = reach * np.where(ahead * before < 0.0, CLOSER, FARTHER), ahead
         if number > 1 and repeats.mean() > 0.5:
             going = np.flatnonzero(~repeats)
             cycle, held, rest = cycle.part(going), held.part(going), rest[going]
@@ -167,9 +175,20 @@ def _ahead(network: Network, measured: Measured, steps: int, drift: Array) -> Ar
             balance.branch(index, rail.clamps_to, (np.zeros_like(slope), slope))
     add_regulators(balance, specimens, rails)
     add_loads(balance, network, rails, mean_pulses(specimens))
-    balance.inject(0, measured.supply / steps, measured.supply_slope / steps)
+    balance.inject(0, measured.supply / steps, _supply_slope(specimens, rails[0], measured.supply_slope / steps))
     far = balance.relaxed(specimens.reservoir * specimens.frequency, drift)
     return np.where(specimens.reservoir > 0.0, far, 0.0)
+
+
+def _supply_slope(specimens: Specimens, first_rail: Array, stepped: Array) -> Array:
+    """By how much less the supply gives a rail that stands higher [S], (n,): by the means, where the `stepped` slope within a
+    cycle says more, for the dropper makes up in the next half cycle what it could not give in this one. Not with a zener at
+    the node.
+    """
+    if specimens.shape.zener_at_node:
+        return stepped
+    _, mean = supply_current(feed_of(specimens), np.maximum(first_rail, 0.0))
+    return np.where(mean < 0.0, np.maximum(stepped, mean), stepped)
 
 
 def _assembled(specimens: Specimens, start: Means, figures: _Figures) -> Settled:
@@ -192,5 +211,10 @@ def _assembled(specimens: Specimens, start: Means, figures: _Figures) -> Settled
         ripple_average=AVERAGE_RESPONDING * rails["magnitude"],
         load_voltage=voltages,
         load_current=currents,
-        converged=figures.converged & start.solved,
+        converged=figures.converged & start.solved & _is_netted(specimens),
     )
+
+
+def _is_netted(specimens: Specimens) -> bool:
+    """A zener at the dropper node that stands on another one has its way back through a rail that cannot give it: not netted."""
+    return not specimens.shape.zener_at_node or specimens.shape.rails[0].clamps_to == TO_COMMON

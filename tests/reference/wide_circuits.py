@@ -5,8 +5,8 @@ come from a fixed seed, in the ranges of the case format's section 4. The four s
 values on open zeners, dried reservoirs and open diodes are there with figures of their own.
 `python -m tests.reference.wide_circuits` rewrites wide_circuits.json.
 
-THE LIST IS FIXED: wide_circuits.json was written before any other solver was run on its circuits, and is not
-changed to suit one.
+THE LIST IS FIXED: wide_circuits.json was written before any other solver was run on its circuits. Circuits are added at its end,
+and none is changed or taken out to suit a solver.
 """
 
 from __future__ import annotations
