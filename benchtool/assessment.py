@@ -40,6 +40,8 @@ def assess(case: Case) -> Assessment:
     standing = cautions(board, bleeder_read=bleeder_read(readings))
     posterior = posterior_of(board, case.meter, readings)
     safety = safety_findings(board, readings, zener_open_of(posterior))
+    found, taken = disagreements(posterior), [reading.check for reading in readings]
+    disagreeing = [reading.check for item in found for reading in (item.first, item.second)]
     return Assessment(
         case=case,
         cautions=standing,
@@ -48,8 +50,8 @@ def assess(case: Case) -> Assessment:
         budget=budget_of(board),
         effective=effective_of(board, case.meter, readings),
         suspects=_suspects(posterior, case),
-        disagreements=disagreements(posterior),
-        next_checks=next_checks(posterior, [reading.check for reading in readings], power_allowed=power_allowed(safety)),
+        disagreements=found,
+        next_checks=next_checks(posterior, taken, power_allowed=power_allowed(safety), disagreeing=disagreeing),
     )
 
 

@@ -104,27 +104,25 @@ class Suspect:
     @property
     def label(self) -> str:
         """The suspect in words."""
-        if self.hypothesis is None:
-            return "unexplained: a reading in doubt, or several faults"
-        if not self.hypothesis.faults:
-            return "no fault in this supply"
-        return ", with ".join(struck.fault.label_at(struck.place) for struck in self.hypothesis.faults)
+        return "unexplained: a reading in doubt, or several faults" if self.hypothesis is None else self.hypothesis.label
 
     def as_dict(self) -> Plain:
         """With the other fault of a pair in `with`."""
         faults = self.hypothesis.faults if self.hypothesis is not None else ()
-        cause = _struck(faults[0]) if faults else {"fault": self.fault, "rail": None, "load": None}
-        part = faults[0].fault.part_at(faults[0].place) if faults else None
         return {
-            "fault": cause["fault"],
-            "part": part,
-            "rail": cause["rail"],
-            "load": cause["load"],
-            "with": _struck(faults[1]) if len(faults) > 1 else None,
+            "part": faults[0].fault.part_at(faults[0].place) if faults else None,
+            **_named(self.hypothesis),
             "probability": self.probability,
             "explains_complaint": self.explains_complaint,
             "because": [_because(row) for row in self.because],
         }
+
+
+def _named(hypothesis: Hypothesis | None) -> Plain:
+    """A hypothesis as its fault and place, the other fault of a pair in `with`."""
+    faults = hypothesis.faults if hypothesis is not None else ()
+    alone = {"fault": UNEXPLAINED if hypothesis is None else hypothesis.name, "rail": None, "load": None}
+    return {**(_struck(faults[0]) if faults else alone), "with": _struck(faults[1]) if len(faults) > 1 else None}
 
 
 def _struck(struck: Struck) -> Plain:
@@ -232,6 +230,14 @@ def _next_check(item: NextCheck) -> Plain:
         "condition": item.condition,
         "gain_bits": item.gain,
         "minutes": item.minutes,
+        "foretold": [
+            {**_named(each.hypothesis), "expected": expected_text(each.expected, check.what)} for each in item.foretold
+        ],
+        "turns": [
+            {**_named(turn.hypothesis), "word": turn.word, "low": turn.low, "high": turn.high, "chance": turn.chance,
+             "probability": turn.probability}
+            for turn in item.turns
+        ],
     }
 
 
@@ -240,6 +246,7 @@ def _disagreement(item: Disagreement, words: Words) -> Plain:
         "first": {**_check(item.first), "read": read_text(item.first)},
         "second": {**_check(item.second), "read": read_text(item.second)},
         "first_implies_for_second": None if item.implied is None else list(item.implied),
+        "likelier_mistake": None if item.doubtful is None else "first" if item.doubtful is item.first else "second",
         "sentence": words.disagreement(item),
     }
 

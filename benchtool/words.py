@@ -11,6 +11,7 @@ from dataclasses import dataclass
 
 from benchtool.board import Board
 from benchtool.catalogue.readings import READING_KINDS, ReadingKind
+from benchtool.diagnosis.checks import Decides
 from benchtool.diagnosis.disagreement import Disagreement
 from benchtool.diagnosis.evidence import Expected
 from benchtool.observed import Check, Reading
@@ -85,8 +86,12 @@ class Words:
         second, read = self.check(item.second), value_of(item.second)
         unit = READING_KINDS[item.second.what].unit
         if item.implied is None or unit is None:
-            return f"{first}. {second}: {read}. No single fault goes with both."
-        return f"{first} would mean {show_range(*item.implied, unit)} for {second}, which reads {read}."
+            told = f"{first}. {second}: {read}. No single fault goes with both."
+        else:
+            told = f"{first} would mean {show_range(*item.implied, unit)} for {second}, which reads {read}."
+        if item.doubtful is None:
+            return f"{told} Either may be the mistake."
+        return f"{told} The likelier mistake: {self.check(item.doubtful)}."
 
     def _conditions(self, check: Check) -> Iterator[str]:
         if state := self.state(check.on):
@@ -167,6 +172,20 @@ def expectation(expected: Expected, what: str) -> str:
     if expected.low <= 0.0 <= kind.low:
         return f"under {show(expected.high, kind.unit)}"
     return show_range(expected.low, expected.high, kind.unit, compact=True)
+
+
+def outcome(decides: Decides, what: str) -> str:
+    """What may be read: "under 0.62 Ω", "612 to 748 nF", "open"."""
+    unit = READING_KINDS[what].unit
+    if decides.word is not None or unit is None:
+        return decides.word or ""
+    if decides.low is None and decides.high is None:
+        return "any number"
+    if decides.low is None:
+        return f"under {show(decides.high, unit)}"
+    if decides.high is None:
+        return f"over {show(decides.low, unit)}"
+    return show_range(decides.low, decides.high, unit, compact=True)
 
 
 def band(low: float | None, high: float | None, unit: str, digits: int = 3) -> str:

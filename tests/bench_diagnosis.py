@@ -22,6 +22,7 @@ from typing import Any
 
 import numpy as np
 
+from benchtool import assess
 from benchtool.case import Case
 from benchtool.casefile import loads, parse_reading
 from benchtool.diagnosis.checks import next_checks
@@ -29,6 +30,8 @@ from benchtool.diagnosis.crowd import crowd_of
 from benchtool.diagnosis.posterior import Posterior, posterior_of
 from benchtool.diagnosis.safety import power_allowed, safety_findings, zener_open_of
 from benchtool.observed import Check, Reading
+from tests.bench_physics import CIRCUIT, LOOSEST
+from tests.reference.simulate import simulate
 
 STORED: dict[str, Any] = json.loads((Path(__file__).parent / "reference" / "bench_boards.json").read_text(encoding="utf-8"))
 DECIDED, MOST_CHECKS = 0.9, 12
@@ -106,6 +109,8 @@ def _typed(row: list[Any]) -> str:
 def _truth(fault: dict[str, Any]) -> tuple[Name, ...]:
     if fault["fault"] in (*LATENT, "no-fault"):
         return ()
+    if "of" in fault:
+        return tuple(_name(part) for part in fault["of"])
     second = fault.get("with")
     return (_name(fault), *((_name(second),) if second else ()))
 
@@ -124,10 +129,8 @@ def first_suspects(found: Posterior, count: int = 3) -> list[tuple[tuple[Name, .
 
 
 def is_right(faults: tuple[Name, ...], truth: tuple[Name, ...]) -> bool:
-    """Whether the suspect is what is wrong: a pair too where the suspect is its cause alone."""
-    if truth and truth[0][0] == "unexplained":
-        return faults == (("unexplained", None),)
-    return set(faults) == set(truth) or (len(truth) == 2 and faults == truth[:1])
+    """Whether the suspect is what is wrong: of two faults too where the suspect is the first of them alone, or `unexplained`."""
+    return set(faults) == set(truth) or (len(truth) == 2 and faults in (truth[:1], (("unexplained", None),)))
 
 
 Order = Callable[[Bench, Posterior, Sequence[Reading]], Iterator[Check]]
@@ -158,8 +161,10 @@ def diagnosed(board: Bench, order: Order) -> Iterator[Verdict]:
         faults, probability = first_suspects(found)[0]
         decided = checks > 0 and probability >= DECIDED
         yield Verdict(board, faults, probability, is_right(faults, board.truth), checks, decided)
+        if decided:
+            return
         following = next((check for check in order(board, found, taken) if _key(check) in board.readings), None)
-        if decided or following is None:
+        if following is None:
             return
         taken.append(board.readings[_key(following)])
 
@@ -228,6 +233,38 @@ def report(draw: str, limit: int | None = None, *, books: bool = True) -> None:
         print(f"by the books' order: {next(table_of(by_book))}")
         print(f"checks a board: {ours:.2f} against {theirs:.2f}, {ours / theirs:.2f} times")
     print(f"in {time.perf_counter() - begun:.0f} s")
+
+
+def test_a_warm_assessment_costs_less_than_one_circuit_by_the_integrator() -> None:
+    board = boards()[0]
+    case = replace(board.case, readings=tuple(board.first))
+    assess(case)
+    one = min(_seconds(lambda: simulate(CIRCUIT, LOOSEST)) for _ in range(2))
+    again, more = _seconds(lambda: assess(case)), replace(case, readings=(*case.readings, _static(board)))
+    another = _seconds(lambda: assess(more))
+    weighed = _seconds(lambda: posterior_of(case.board, case.meter, more.readings))
+    print(f"\none circuit {one * 1e3:.0f} ms; assessed again {again * 1e3:.0f} ms, with another reading {another * 1e3:.0f} ms")
+    print(f"weighed anew {weighed * 1e3:.1f} ms")
+    assert another < one
+
+
+def _static(board: Bench) -> Reading:
+    """A reading that asks for no state of its own."""
+    return next(reading for reading in board.readings.values() if reading.what == "inrush-resistance")
+
+
+def _seconds(work: Callable[[], object]) -> float:
+    begun = time.perf_counter()
+    work()
+    return time.perf_counter() - begun
+
+
+def test_most_of_a_few_boards_are_diagnosed_in_few_checks() -> None:
+    # Every twentieth board drawn by the priors; all of them are told by `python -m tests.bench_diagnosis`.
+    chosen = [board for board in boards() if board.draw == "priors"][::20]
+    ends = [list(diagnosed(board, proposed))[-1] for board in chosen]
+    assert sum(verdict.right and verdict.decided for verdict in ends) >= len(ends) - 1
+    assert np.mean([verdict.checks for verdict in ends]) < MOST_CHECKS / 3
 
 
 if __name__ == "__main__":

@@ -99,7 +99,7 @@ def draw_few(monkeypatch: pytest.MonkeyPatch, count: int, *, coarse: bool = Fals
 
 def forget(monkeypatch: pytest.MonkeyPatch) -> None:
     """What is kept for a board, kept for this test only."""
-    monkeypatch.setattr(posterior, "crowd_of", lru_cache(crowd.Crowd))
+    monkeypatch.setattr(posterior, "crowd_of", lru_cache(crowd.crowd_of.__wrapped__))
     monkeypatch.setattr(assessment, "_yardsticks", lru_cache(assessment._yardsticks.__wrapped__))
     monkeypatch.setattr(assessment, "budget_of", budget.budget_of.__wrapped__)
     monkeypatch.setattr(closer, "_bench", lru_cache(closer._bench.__wrapped__))

@@ -21,7 +21,6 @@ from benchtool.catalogue.shown import Shown
 from benchtool.catalogue.strikes import Place
 from benchtool.diagnosis import checks, crowd
 from benchtool.diagnosis.checks import candidates, minutes_of, next_checks
-from benchtool.diagnosis.crowd import Crowd
 from benchtool.diagnosis.hypotheses import Hypothesis, Struck
 from benchtool.diagnosis.posterior import Posterior, posterior_of
 from benchtool.observed import Check, Meter
@@ -42,9 +41,10 @@ def known_posterior(probabilities: Sequence[float], monkeypatch: pytest.MonkeyPa
     )
     monkeypatch.setattr(crowd, "hypotheses_of", lambda board: hypotheses)
     monkeypatch.setattr(crowd, "EACH", EACH)
+    monkeypatch.setattr(checks, "TOLD", 0)
     chances, nothing = np.array(probabilities), np.zeros((0, len(hypotheses), EACH))
     return Posterior(
-        crowd=Crowd(FULL.board),
+        crowd=crowd.crowd_of.__wrapped__(FULL.board),
         meter=METER,
         readings=(),
         densities=nothing,

@@ -30,9 +30,9 @@ def ramped(capacitance: Array, across: Array, chance: Array) -> Array:
 
     A range that ramps at constant current reads high by x/(1 − e^−x), x = window/RC (published values).
     """
-    window = RAMP_SECONDS * np.maximum(2.0 * chance - 1.0, 0.0)
-    x = np.clip(window / np.maximum(across * capacitance, 1e-12), 1e-9, 50.0)
-    return np.asarray(capacitance * np.where(np.isinf(across), 1.0, x / -np.expm1(-x)))
+    bridged, window = np.isfinite(across), RAMP_SECONDS * np.maximum(2.0 * chance - 1.0, 0.0)
+    x = np.clip(window / np.maximum(np.where(bridged, across, 0.0) * capacitance, 1e-12), 1e-9, 50.0)
+    return np.asarray(capacitance * np.where(bridged, x / -np.expm1(-x), 1.0))
 
 
 def misread_junction(view: View) -> Array:

@@ -27,7 +27,8 @@ RAIL_ERROR, RAIL_ERROR_FLOOR = 0.003, 0.02
 coarse steps differ from the reference (`python -m tests.compared crowd`).
 """
 RIPPLE_ERROR, RIPPLE_ERROR_FLOOR = 0.05, 0.01
-LINE_ERROR = 0.01
+LINE_ERROR, LINE_ERROR_FLOOR = 0.01, 1.5e-4
+"""Share, and amperes: what leaks past a part that blocks is left out of the physics."""
 UNSOLVED = 0.2
 """One sigma, as a share, of a specimen whose cycle did not repeat."""
 SURE = 0.96
@@ -75,7 +76,12 @@ def _ripple_rms(view: View) -> Shown:
 
 def _line_current(view: View) -> Shown:
     value = _line(view)
-    return Shown(value, LINE_ERROR * value)
+    return Shown(value, _line_error(view, value))
+
+
+def _line_error(view: View, current: Array) -> Array:
+    """One sigma [A] of the physics on `current` in the mains lead [A], (n,); nil where the lead is cut."""
+    return np.where(np.isfinite(view.specimens.series_resistance), LINE_ERROR * current + LINE_ERROR_FLOOR, 0.0)
 
 
 def _line(view: View) -> Array:
@@ -89,8 +95,9 @@ def _inrush_voltage(view: View) -> Shown:
     current = _line(view)
     resistance = view.specimens.inrush
     across = np.isinf(resistance) & np.isfinite(view.specimens.fuse + view.specimens.joint)
-    value = np.where(across, view.specimens.mains, current * np.where(np.isinf(resistance), 0.0, resistance))
-    return Shown(value, LINE_ERROR * value + np.where(across, 0.2 * value, 0.0))
+    whole = np.where(np.isinf(resistance), 0.0, resistance)
+    value = np.where(across, view.specimens.mains, current * whole)
+    return Shown(value, np.where(across, 0.2 * value, _line_error(view, current) * whole))
 
 
 def _dropper_voltage(view: View) -> Shown:
@@ -257,11 +264,12 @@ def _load_current(view: View) -> Shown:
 
 def _branch(specimens: Specimens, number: int, voltage: Array) -> Array:
     kind = specimens.shape.loads[number].kind
+    sink = branches.constant_current(voltage, specimens.load_current[number])[0]
     if kind in ("current", "gate"):
-        return branches.constant_current(voltage, specimens.load_current[number])[0]
+        return sink
     if kind == "led":
-        return branches.led(voltage, specimens.load_forward[number], specimens.load_resistance[number])[0]
-    return branches.resistor(voltage, specimens.load_resistance[number])[0]
+        return sink + branches.led(voltage, specimens.load_forward[number], specimens.load_resistance[number])[0]
+    return sink + branches.resistor(voltage, specimens.load_resistance[number])[0]
 
 
 def _coil(view: View) -> Shown:

@@ -81,8 +81,10 @@ def dropper_lost(specimens: Specimens, scene: Scene) -> Specimens:
 
 
 def _left(scene: Scene) -> Array:
+    """Share of a capacitor that is left; both ends are where another fault, or none, begins, so nothing lies beyond them."""
     edge = max(1.0 - dropper_tolerance(scene.board), 0.05)
-    return np.interp(scene.severity, [0.0, 0.05, 0.95, 1.0], [0.02, 0.10 * edge / 0.9, 0.85 * edge / 0.9, edge])
+    within = 1.0 - np.abs(1.0 - np.abs(scene.severity))
+    return np.interp(within, [0.0, 0.05, 0.95, 1.0], [0.02, 0.10 * edge / 0.9, 0.85 * edge / 0.9, edge])
 
 
 def _mark(specimens: Specimens, board: Board) -> Array:
@@ -219,17 +221,19 @@ def feed_short(specimens: Specimens, scene: Scene) -> Specimens:
 
 
 def load_excess(specimens: Specimens, scene: Scene) -> Specimens:
-    """Draws 0.5 to 4 times the board's normal load beyond its rating: a current load by its own law, others as a resistor."""
-    load = scene.board.loads[scene.index]
+    """Draws 0.5 to 4 times the board's normal load beyond its rating: a current load by its own law; of the others half as a
+    resistor and half as a sink, as what has broken down in them may be either.
+    """
+    load, more = scene.board.loads[scene.index], scene.by_decades(0.5, 4.0) * scene.normal_load
+    sinks = (load.kind == "current") | (scene.other < 0.5)
+    specimens = _row(specimens, scene, "load_current", specimens.load_current[scene.index] + np.where(sinks, more, 0.0))
     if load.kind == "current":
-        more = scene.by_decades(0.5, 4.0) * scene.normal_load
-        return _row(specimens, scene, "load_current", specimens.load_current[scene.index] + more)
+        return specimens
     upper = nominal_voltage(scene.board, scene.board.rail(load.rail)) or 12.0
     lower = 0.0
     if load.returns_to != "common":
         lower = nominal_voltage(scene.board, scene.board.rail(load.returns_to)) or 0.0
-    conductance = scene.by_decades(0.5, 4.0) * scene.normal_load / max(upper - lower, 1.0)
-    return _row(specimens, scene, "load_excess", conductance)
+    return _row(specimens, scene, "load_excess", np.where(sinks, 0.0, more / max(upper - lower, 1.0)))
 
 
 def load_open(specimens: Specimens, scene: Scene) -> Specimens:

@@ -17,7 +17,9 @@ from benchtool.catalogue.accepted import lacking
 from benchtool.catalogue.readings import READING_KINDS, READINGS, ReadingKind
 from benchtool.catalogue.shown import Shown
 from benchtool.catalogue.shows import SHOWS
-from benchtool.diagnosis.outcomes import Outcomes, outcomes_of
+from benchtool.diagnosis.evidence import Expected, expected
+from benchtool.diagnosis.hypotheses import Hypothesis
+from benchtool.diagnosis.outcomes import Outcomes, outcomes_of, turns_of
 from benchtool.diagnosis.posterior import ELSEWHERE, Posterior
 from benchtool.observed import Check
 from benchtool.physics.laws import Flags
@@ -25,6 +27,8 @@ from benchtool.physics.laws import Flags
 FIRST_LIVE_MINUTES = 5.0
 FIRST_DEAD_MINUTES = 2.0
 """Extra minutes for the first live check, and for the first dead one after a live one; common practice, no source."""
+TOLD, SUSPECTS = 3, 3
+"""Checks of which it is told what they should show, and the suspects for which."""
 WORTH = 0.005
 """Gains below this are noise [bit]."""
 COUNTS_FROM = 1e-4
@@ -35,12 +39,39 @@ LIVE_PENALTY = 0.5
 
 @dataclass(frozen=True, slots=True)
 class NextCheck:
-    """A check worth making: its gain [bit], minutes with set-up, and whether the board is live meanwhile."""
+    """A check worth making: its gain [bit], minutes with set-up, and whether the board is live meanwhile.
+
+    Of the first few also what it should show, healthy and with each of the first suspects, and what would be decided by it.
+    """
 
     check: Check
     condition: str
     gain: float
     minutes: float
+    foretold: tuple[Foretold, ...] = ()
+    turns: tuple[Decides, ...] = ()
+
+
+@dataclass(frozen=True, slots=True)
+class Foretold:
+    """What a check should show under a hypothesis."""
+
+    hypothesis: Hypothesis
+    expected: Expected
+
+
+@dataclass(frozen=True, slots=True)
+class Decides:
+    """A word, or numbers from `low` to `high` [the check's unit], that would put a hypothesis first: with what `chance` that is
+    read, and the `probability` the hypothesis then has.
+    """
+
+    hypothesis: Hypothesis
+    word: str | None
+    low: float | None
+    high: float | None
+    chance: float
+    probability: float
 
 
 def candidates(board: Board, taken: Sequence[Check]) -> Iterator[Check]:
@@ -52,6 +83,14 @@ def candidates(board: Board, taken: Sequence[Check]) -> Iterator[Check]:
                 better = _same(replace(check, lifted=True)) if check.what == "dropper-capacitance" else _same(check)
                 if not {_same(check), better} & done:
                     yield check
+
+
+def taken_better(check: Check, board: Board) -> Check | None:
+    """The same check in a better condition, if there is one: with a leg lifted, or once the board is warm."""
+    kind = READING_KINDS[check.what]
+    if "lifted" in kind.may and not check.lifted and board.bleeder is not None:
+        return replace(check, lifted=True)
+    return replace(check, when="warm") if kind.condition == "live" and check.on and check.when == "cold" else None
 
 
 def _same(check: Check) -> tuple[object, ...]:
@@ -87,15 +126,20 @@ def minutes_of(check: Check, last_condition: str | None) -> float:
     return minutes
 
 
-def next_checks(posterior: Posterior, taken: Sequence[Check], *, power_allowed: bool = True) -> tuple[NextCheck, ...]:
+def next_checks(
+    posterior: Posterior, taken: Sequence[Check], *, power_allowed: bool = True, disagreeing: Sequence[Check] = ()
+) -> tuple[NextCheck, ...]:
     """Checks not yet made, the most useful a minute first; dead checks before live ones of like use.
 
-    `power_allowed`: whether the board may be powered at all; if not, no live check is proposed.
+    `power_allowed`: whether the board may be powered at all; if not, no live check is proposed. `disagreeing`: checks whose
+    readings disagree with others; they come back where they can be made in a better condition.
     """
     weigher = _Weigher(posterior)
     last = READING_KINDS[taken[-1].what].condition if taken else None
     found = []
-    for check in candidates(posterior.board, taken):
+    done = {_same(check) for check in taken}
+    better = [again for check in disagreeing if (again := taken_better(check, posterior.board)) and _same(again) not in done]
+    for check in dict.fromkeys([*better, *candidates(posterior.board, taken)]):
         condition = READING_KINDS[check.what].condition
         if condition == "live" and not power_allowed:
             continue
@@ -103,7 +147,13 @@ def next_checks(posterior: Posterior, taken: Sequence[Check], *, power_allowed: 
         use = outcomes.gain_if_doubted()
         if use > WORTH:
             found.append((use, NextCheck(check, condition, outcomes.gain(), minutes_of(check, last))))
-    return tuple(item for _, item in sorted(found, key=_usefulness, reverse=True))
+    ordered = [item for _, item in sorted(found, key=_usefulness, reverse=True)]
+    return (*(weigher.told(item) for item in ordered[:TOLD]), *ordered[TOLD:])
+
+
+def in_full(posterior: Posterior, item: NextCheck) -> NextCheck:
+    """`item` with what it should show, healthy and with the first suspects, and what would be decided by it."""
+    return _Weigher(posterior).told(item)
 
 
 def _usefulness(item: tuple[float, NextCheck]) -> float:
@@ -125,6 +175,20 @@ class _Weigher:
         crowd, meter = self._posterior.crowd, self._posterior.meter
         shown = _of_rows(crowd.shown(check, meter, self._where), self._where.ravel())
         return outcomes_of(shown, self._shares, READING_KINDS[check.what], meter)
+
+
+    def told(self, item: NextCheck) -> NextCheck:
+        """`item` with what it should show and what would be decided by it."""
+        found, hypotheses = self._posterior, self._posterior.hypotheses
+        counted = np.flatnonzero(self.rows)
+        suspects = [int(row) for row in np.argsort(-found.explained, kind="stable")[:SUSPECTS] if self.rows[row]]
+        shown = list(dict.fromkeys([found.crowd.sound, *suspects]))
+        ranges = expected(found, item.check, shown)
+        turns = [
+            Decides(hypotheses[counted[turn.row]], turn.word, turn.low, turn.high, turn.chance, turn.probability)
+            for turn in turns_of(self.outcomes(item.check))
+        ]
+        return replace(item, foretold=tuple(Foretold(hypotheses[row], ranges[row]) for row in shown), turns=tuple(turns))
 
 
 def _of_rows(shown: Shown, where: Flags) -> Shown:

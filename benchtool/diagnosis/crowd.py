@@ -43,13 +43,23 @@ OF_THE_MAINS = ("mains-low", "mains-high")
 
 
 class Crowd:
-    """Every hypothesis of `board` with `EACH` specimens, on one bench."""
+    """Hypotheses of `board` with as many specimens each, on one bench."""
 
-    def __init__(self, board: Board) -> None:
-        self.board, self.hypotheses, self.each = board, hypotheses_of(board), EACH
-        healthy = _as_while_reading(population(board, EACH), board)
-        self.bench = Bench(concatenate([struck(board, hypothesis, healthy) for hypothesis in self.hypotheses]), crowd=True)
+    def __init__(self, board: Board, hypotheses: tuple[Hypothesis, ...], bench: Bench) -> None:
+        """`bench`: as many specimens of each of `hypotheses`, one after the other."""
+        self.board, self.hypotheses, self.bench = board, hypotheses, bench
+        self.each = bench.specimens.count // len(hypotheses)
         self._densities: dict[tuple[Reading, Meter], Array] = {}
+        self._extended: dict[tuple[Hypothesis, ...], Crowd] = {}
+
+    def extended(self, more: tuple[Hypothesis, ...]) -> Crowd:
+        """This crowd with `more` hypotheses behind its own; the last one asked for is kept."""
+        if more not in self._extended:
+            healthy = _healthy(self.board, self.each)
+            specimens = concatenate([struck(self.board, hypothesis, healthy) for hypothesis in more])
+            bench = self.bench.extended(specimens)
+            self._extended = {more: Crowd(self.board, (*self.hypotheses, *more), bench)}
+        return self._extended[more]
 
     @property
     def shape(self) -> tuple[int, int]:
@@ -104,7 +114,13 @@ class Crowd:
 @lru_cache(maxsize=BOARDS_KEPT)
 def crowd_of(board: Board) -> Crowd:
     """The crowd of `board`, made once."""
-    return Crowd(board)
+    hypotheses, healthy = hypotheses_of(board), _healthy(board, EACH)
+    bench = Bench(concatenate([struck(board, hypothesis, healthy) for hypothesis in hypotheses]), crowd=True)
+    return Crowd(board, hypotheses, bench)
+
+
+def _healthy(board: Board, count: int) -> Specimens:
+    return _as_while_reading(population(board, count), board)
 
 
 Box = tuple[tuple[float, float], tuple[float, float]]

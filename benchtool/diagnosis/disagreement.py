@@ -9,22 +9,28 @@ from itertools import combinations
 import numpy as np
 
 from benchtool.catalogue.readings import READING_KINDS
-from benchtool.diagnosis.likelihood import LEAST
+from benchtool.diagnosis.likelihood import LEAST, log_sum
 from benchtool.diagnosis.posterior import Posterior
 from benchtool.observed import Reading
 from benchtool.physics.laws import Array
 
 CLEARLY = 2.0
 """Natural logarithm by which a mistake must account for the pair better than the best single fault."""
+RATHER = 1.5
+"""Natural logarithm from which one of two readings is called the likelier mistake."""
 
 
 @dataclass(frozen=True, slots=True)
 class Disagreement:
-    """Two readings; `implied` is what the first implies for the second [its unit], low and high, None for words."""
+    """Two readings; `implied` is what the first implies for the second [its unit], low and high, None for words.
+
+    `doubtful`: the one that is the likelier mistake, None where neither is by much.
+    """
 
     first: Reading
     second: Reading
     implied: tuple[float, float] | None
+    doubtful: Reading | None = None
 
 
 def disagreements(posterior: Posterior) -> tuple[Disagreement, ...]:
@@ -41,7 +47,23 @@ def _found(posterior: Posterior) -> Iterator[Disagreement]:
         possible = best[first] > uniform[first] and best[second] > uniform[second]
         if possible and together[first, second] < uniform[first] + uniform[second] - CLEARLY:
             likeliest = max(singles, key=lambda index: np.log(posterior.hypotheses[index].weight) + alone[first, index])
-            yield Disagreement(readings[first], readings[second], _implied(posterior, likeliest, first, second))
+            implied, doubtful = _implied(posterior, likeliest, first, second), _doubtful(posterior, first, second)
+            yield Disagreement(readings[first], readings[second], implied, doubtful)
+
+
+def _doubtful(posterior: Posterior, first: int, second: int) -> Reading | None:
+    """Which of two readings is the likelier mistake: the one without which the hypotheses account better for all the others."""
+    without = [_log_without(posterior, row) + float(posterior.uniform[row]) for row in (first, second)]
+    if abs(without[0] - without[1]) < RATHER:
+        return None
+    return posterior.readings[first if without[0] > without[1] else second]
+
+
+def _log_without(posterior: Posterior, row: int) -> float:
+    """Logarithm of the likelihood of all readings but one, the hypotheses weighed by their priors."""
+    rest = np.delete(posterior.densities, row, axis=0).sum(axis=0) + posterior.log_prior
+    weights = np.log([hypothesis.weight for hypothesis in posterior.hypotheses])
+    return float(log_sum(log_sum(rest) + weights))
 
 
 def _together(posterior: Posterior, singles: list[int]) -> Array:

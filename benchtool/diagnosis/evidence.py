@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -64,12 +65,16 @@ def evidence_of(posterior: Posterior) -> list[tuple[Because, ...]]:
     return [tuple(row[index] for row in rows) for index in range(len(posterior.hypotheses))]
 
 
-def expected(posterior: Posterior, check: Check) -> list[Expected]:
-    """What `check` should show under every hypothesis, the meter's own inaccuracy included."""
+def expected(posterior: Posterior, check: Check, rows: Sequence[int] | None = None) -> list[Expected]:
+    """What `check` should show under every hypothesis, the meter's own inaccuracy included; where `rows` are given only those
+    count.
+    """
     crowd, meter = posterior.crowd, posterior.meter
     if check.what == "look":
         return [Expected(words=("weak evidence, never proof",))] * len(crowd.hypotheses)
-    shown, kind = crowd.shown(check, meter), READING_KINDS[check.what]
+    where = np.zeros(crowd.shape, dtype=bool)
+    where[slice(None) if rows is None else list(rows)] = True
+    shown, kind = crowd.shown(check, meter, where), READING_KINDS[check.what]
     counts = posterior.log_prior > posterior.log_prior.max(axis=1, keepdims=True) - COUNT_WITHIN
     if shown.value is None:
         chances = {word: _means(chance.reshape(crowd.shape), counts) for word, chance in shown.chances.items()}

@@ -45,6 +45,13 @@ class Hypothesis:
         """The first fault's name."""
         return self.faults[0].fault.name if self.faults else NO_FAULT
 
+    @property
+    def label(self) -> str:
+        """The hypothesis in words."""
+        if not self.faults:
+            return "no fault in this supply"
+        return ", with ".join(struck.fault.label_at(struck.place) for struck in self.faults)
+
 
 def hypotheses_of(board: Board) -> tuple[Hypothesis, ...]:
     """Every hypothesis for `board`, the sound board first. A fault's weight is shared by its places; absent parts drop out."""

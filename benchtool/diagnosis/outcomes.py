@@ -6,6 +6,7 @@ Words are outcomes as they are; numbers are sorted into classes as wide as the m
 from __future__ import annotations
 
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 
@@ -22,6 +23,10 @@ DOUBT = 0.5
 """Power of the hypotheses' shares with which a check is chosen: rarer suspects count for more than their priors, so that a first
 suspect is put to the test and not only confirmed by what is likely anyway.
 """
+
+
+HARDLY_EVER = 0.01
+"""Chance up to which an outcome is not told."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -41,6 +46,40 @@ class Outcomes:
         shares = self.table.sum(axis=1, keepdims=True)
         doubted = np.where(shares > 0.0, self.table * np.maximum(shares, 1e-300) ** (DOUBT - 1.0), 0.0)
         return _information(doubted / doubted.sum())
+
+
+@dataclass(frozen=True, slots=True)
+class Turn:
+    """Outcomes that leave the same hypothesis (by its row) in the lead: a word, or numbers from `low` to `high` [unit], None for
+    an end that is open. `chance` of it, and the `probability` that the hypothesis would then have.
+    """
+
+    row: int
+    word: str | None
+    low: float | None
+    high: float | None
+    chance: float
+    probability: float
+
+
+def turns_of(outcomes: Outcomes) -> list[Turn]:
+    """What would be decided by what is read: for each word, and each run of classes with one hypothesis in the lead."""
+    table, words = outcomes.table / outcomes.table.sum(), len(outcomes.words)
+    found = [_turn(table[:, [column]], word, None, None) for column, word in enumerate(outcomes.words)]
+    numbers = table[:, words:]
+    leads, last = numbers.argmax(axis=0), numbers.shape[1]
+    starts = [column for column in range(last) if column == 0 or leads[column] != leads[column - 1]]
+    for start, end in pairwise([*starts, last]):
+        low = None if start == 0 else float(outcomes.edges[start])
+        high = None if end == last else float(outcomes.edges[end])
+        found.append(_turn(numbers[:, start:end], None, low, high))
+    return [turn for turn in found if turn.chance > HARDLY_EVER]
+
+
+def _turn(columns: Array, word: str | None, low: float | None, high: float | None) -> Turn:
+    shares, chance = columns.sum(axis=1), float(columns.sum())
+    row = int(shares.argmax())
+    return Turn(row, word, low, high, chance, float(shares[row]) / chance if chance > 0.0 else 0.0)
 
 
 def _information(table: Array) -> float:

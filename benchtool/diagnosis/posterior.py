@@ -19,11 +19,15 @@ from benchtool.diagnosis.crowd import Crowd, crowd_of
 from benchtool.diagnosis.hypotheses import Hypothesis
 from benchtool.diagnosis.likelihood import effective_number, log_sum, log_uniform_density, tempered
 from benchtool.diagnosis.nearby import mains_read
+from benchtool.diagnosis.pairs import promising_pairs
 from benchtool.observed import Meter, Reading
 from benchtool.physics.laws import Array
 
 LEADS_FROM = 0.005
 """Share of all that is explained from which a hypothesis leads."""
+MOST_LEADERS = 8
+LIKE_A_MISTAKE = 3.0
+"""Natural logarithm by which a mistake must account for a reading better than the first hypothesis does."""
 ENOUGH = 0.15
 """Share of its specimens that a leading hypothesis must still be worth to be judged as it stands."""
 SPREAD_OVER = 24.0
@@ -94,18 +98,30 @@ def _order(board: Board, reading: Reading) -> tuple[str | int | bool | tuple[int
 
 
 def posterior_of(board: Board, meter: Meter, readings: Sequence[Reading]) -> Posterior:
-    """The probabilities of everything that may be wrong with `board`, given `readings`."""
+    """The probabilities of everything that may be wrong with `board`, given `readings`.
+
+    Where a reading is more like a mistake under what accounts for the rest, pairs of faults that account for both come in.
+    """
     taken, crowd = usable(board, readings), crowd_of(board)
+    found = _weighed(crowd, meter, taken)
+    logs = found.log_likelihood + np.log([hypothesis.weight for hypothesis in crowd.hypotheses])
+    alone, best = found.alone(), int(np.argmax(logs))
+    if not (alone[:, best] < found.uniform - LIKE_A_MISTAKE).any():
+        return found
+    pairs = promising_pairs(crowd.hypotheses, alone, float(logs[best]) + float(np.log(LEADS_FROM)))
+    return _weighed(crowd.extended(pairs), meter, taken) if pairs else found
+
+
+def _weighed(crowd: Crowd, meter: Meter, taken: tuple[Reading, ...]) -> Posterior:
+    """Bayes' rule: prior weight times likelihood, `unexplained` competing with readings that are mistakes."""
     densities = np.array([crowd.densities(reading, meter) for reading in taken]).reshape(len(taken), *crowd.shape)
     log_prior = crowd.log_prior(mains_read=mains_read(taken) is not None)
     joint = densities.sum(axis=0) + log_prior
     logs, weights = log_sum(joint), np.log([hypothesis.weight for hypothesis in crowd.hypotheses])
-    leads = (_normalised(logs + weights) > LEADS_FROM) & (effective_number(joint) < ENOUGH * crowd.each)
-    closer = drawn_closer(crowd, meter, taken, joint, [int(index) for index in np.flatnonzero(leads)])
+    closer = drawn_closer(crowd, meter, taken, joint, _leaders(densities, log_prior, logs, weights))
     for index, item in closer.items():
         logs[index] = log_sum(item.joint)
-    uniform = np.array([log_uniform_density(reading, board) for reading in taken])
-    # Bayes' rule: prior weight times likelihood, `unexplained` competing with readings that are mistakes.
+    uniform = np.array([log_uniform_density(reading, crowd.board) for reading in taken])
     shares = _normalised(np.append(logs + weights, np.log(UNEXPLAINED_WEIGHT) + float(uniform.sum())))
     return Posterior(
         crowd=crowd,
@@ -124,3 +140,17 @@ def posterior_of(board: Board, meter: Meter, readings: Sequence[Reading]) -> Pos
 
 def _normalised(logs: Array) -> Array:
     return np.asarray(np.exp(logs - log_sum(logs)))
+
+
+def _leaders(densities: Array, log_prior: Array, logs: Array, weights: Array) -> list[int]:
+    """The hypotheses worth drawing again: left but few specimens, and in the lead, or it may be so.
+
+    Where two sharp readings leave hardly a specimen that accounts for both, the product of what each is worth by itself tells
+    what the hypothesis may come to.
+    """
+    joint = densities.sum(axis=0) + log_prior
+    apart = log_sum(densities + log_prior).sum(axis=0) if len(densities) else logs
+    hope = _normalised(np.maximum(logs, apart) + weights)
+    few = effective_number(joint) < ENOUGH * joint.shape[1]
+    ordered = np.argsort(-hope, kind="stable")[:MOST_LEADERS]
+    return [int(index) for index in ordered if few[index] and hope[index] > LEADS_FROM]

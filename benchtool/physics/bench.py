@@ -12,7 +12,7 @@ from benchtool.physics import mean_value, waveform
 from benchtool.physics.laws import Array, Flags
 from benchtool.physics.sequence import METER_WINDOW, coordinate
 from benchtool.physics.settled import Settled
-from benchtool.physics.specimens import Specimens, take
+from benchtool.physics.specimens import Specimens, concatenate, take
 
 SETTLED_ARRAYS = tuple(field.name for field in fields(Settled) if field.name != "specimens")
 
@@ -57,6 +57,20 @@ class Bench:
             kept = self._injected.setdefault(key, np.full(self.specimens.count, np.nan))
             kept[index] = np.where(solved, volts, np.nan)
         return self._injected[key]
+
+    def extended(self, more: Specimens) -> Bench:
+        """A bench with `more` specimens behind these, of which it knows what this one has found out by now."""
+        longer = Bench(concatenate([self.specimens, more]), crowd=self._crowd)
+
+        def padded(array: NDArray[Any]) -> NDArray[Any]:
+            return np.concatenate([array, np.zeros((*array.shape[:-1], more.count), dtype=array.dtype)], axis=-1)
+
+        for key, settled in self._settled.items():
+            arrays: dict[str, Any] = {name: padded(getattr(settled, name)) for name in SETTLED_ARRAYS}
+            longer._settled[key] = replace(settled, specimens=longer.specimens, **arrays)
+        longer._injected = {key: padded(volts) for key, volts in self._injected.items()}
+        longer._done = {key: padded(done) for key, done in self._done.items()}
+        return longer
 
     def chance(self) -> Array:
         """A coordinate evenly over 0 to 1 for what depends on the meter and not on the specimen, (n,)."""

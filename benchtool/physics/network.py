@@ -175,14 +175,17 @@ def load_curve(network: Network, index: int, voltage: Array, pulsed: float) -> b
     `pulsed`: share of the time that a gate pulse flows.
     """
     specimens, drawn = network.specimens, network.drawing[index]
-    kind = specimens.shape.loads[index].kind
+    kind, sinks = specimens.shape.loads[index].kind, bool(specimens.load_current[index].any())
+    if kind != "led" and not sinks:
+        return None
+    current, slope = np.zeros(specimens.count), np.zeros(specimens.count)
     if kind == "led":
         current, slope = branches.led(voltage, specimens.load_forward[index], network.load_resistance[index])
-        return current * drawn, slope * drawn
-    if kind in ("current", "gate"):
+    if sinks:
         flows = pulsed if kind == "gate" else 1.0
-        return branches.constant_current(voltage, specimens.load_current[index] * (drawn * flows))
-    return None
+        sink, sink_slope = branches.constant_current(voltage, specimens.load_current[index] * flows)
+        current, slope = current + sink, slope + sink_slope
+    return current * drawn, slope * drawn
 
 
 def rail_zener(specimens: Specimens, index: int, rails: Array) -> branches.Branch:

@@ -15,7 +15,7 @@ from benchtool.quantities import show
 from benchtool.report.bar import SURE, page_bar
 from benchtool.report.layout import Line, Page, padded, paragraph, table
 from benchtool.result import RailState, State, Suspect
-from benchtool.words import CANNOT_TELL, Words, band, expectation, judged, percent, typed, value_of
+from benchtool.words import CANNOT_TELL, Words, band, expectation, judged, outcome, percent, typed, value_of
 
 LISTED = 6
 """Suspects listed one by one."""
@@ -138,9 +138,40 @@ def next_lines(
     text = f"{_costs(first, words)}. {CONDITIONS[first.condition]} {tells(first, suspects)}"
     lines = paragraph(page, text, first="NEXT  ")
     lines.extend(paragraph(page, f'--reading "{typed(first.check)}"', first="type  "))
+    lines.extend(paragraph(page, _foretold(first), first="shows "))
+    if len(first.turns) > 1:
+        lines.extend(paragraph(page, _decides(first), first="means "))
     for number, check in enumerate(others):
         lines.extend(paragraph(page, f"{_costs(check, words)}.", first="then  " if number == 0 else "      "))
     return lines
+
+
+def _foretold(item: NextCheck) -> str:
+    """What the check should show, healthy and with the first suspects; those of which it shows the same together."""
+    labels: dict[str, list[str]] = {}
+    for each in item.foretold:
+        label = each.hypothesis.label if each.hypothesis.faults else "healthy"
+        labels.setdefault(expectation(each.expected, item.check.what), []).append(label)
+    return "; ".join(f"{', or '.join(who)}: {shown}" for shown, who in labels.items())
+
+
+def _decides(item: NextCheck) -> str:
+    """What would be decided by what is read."""
+    return "; ".join(
+        f"{outcome(turn, item.check.what)}: {turn.hypothesis.label} ({percent(turn.probability)})" for turn in item.turns
+    )
+
+
+def turning_lines(suspect: Suspect, checks: Sequence[NextCheck], words: Words, page: Page) -> list[Line]:
+    """What would change the verdict: of the first checks, the outcome that would most likely put another suspect first."""
+    turns = [
+        (turn, item) for item in checks for turn in item.turns if turn.hypothesis is not suspect.hypothesis
+    ]
+    if suspect.hypothesis is None or not turns:
+        return []
+    turn, item = max(turns, key=lambda each: each[0].chance)
+    reads = f"{words.check(item.check)} {outcome(turn, item.check.what)}"
+    return paragraph(page, f"{reads} would make it {turn.hypothesis.label} ({percent(turn.probability)}).", first="BUT  ")
 
 
 def _with_a_dead_one(checks: Sequence[NextCheck]) -> list[NextCheck]:

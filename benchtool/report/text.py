@@ -19,6 +19,7 @@ from benchtool.report.evidence import (
     next_lines,
     states_lines,
     suspects_lines,
+    turning_lines,
 )
 from benchtool.report.layout import Line, Page, paragraph
 from benchtool.result import Assessment, Suspect
@@ -62,7 +63,8 @@ def _verdict_blocks(assessment: Assessment, words: Words, page: Page) -> Iterato
         budget = budget_lines(assessment.budget, effective, words, page)
         yield [*budget, *effective_lines(assessment, words, page)]
     yield suspects_lines(suspects, page, still_run=may_run(assessment))
-    yield evidence_lines(_told_by(suspects), words, page)
+    told = _told_by(suspects)
+    yield [*evidence_lines(told, words, page), *turning_lines(told, assessment.next_checks, words, page)]
     checks = next_lines(assessment.next_checks, suspects, words, page)
     yield [*disagreement_lines(assessment.disagreements, words, page), *checks]
     yield states_lines(assessment.states, words, page)
