@@ -26,6 +26,10 @@ RAIL_ERROR, RAIL_ERROR_FLOOR = 0.003, 0.02
 """One sigma of the physics on a rail's mean, as a crowd is settled: share, and volts. This and the next two: by what the crowd's
 coarse steps differ from the reference (`python -m tests.compared crowd`).
 """
+FLOATS, NOTHING_FLOWS = 10.0, 3e-6
+"""One sigma of a rail that nothing feeds and no load is on [V], and the current under which it counts as not fed [A]: what leaks
+past parts that block, and the meter itself, decide there.
+"""
 RIPPLE_ERROR, RIPPLE_ERROR_FLOOR = 0.05, 0.01
 LINE_ERROR, LINE_ERROR_FLOOR = 0.01, 1.5e-4
 """Share, and amperes: what leaks past a part that blocks is left out of the physics."""
@@ -54,7 +58,21 @@ def _rail_voltage(view: View) -> Shown:
     """A DC range shows the mean, whatever ripple stands on it."""
     settled, index = view.settled, view.rail
     value = settled.rail_voltage[index]
-    return Shown(value, RAIL_ERROR * np.abs(value) + RAIL_ERROR_FLOOR + _unsolved(settled, value))
+    floats = np.where(_floats(view), FLOATS, 0.0)
+    return Shown(value, RAIL_ERROR * np.abs(value) + RAIL_ERROR_FLOOR + floats + _unsolved(settled, value))
+
+
+def _floats(view: View) -> Flags:
+    """Where nothing feeds the rail and no load is on it, so that leaks decide at what voltage it stands; (n,)."""
+    settled, index, specimens = view.settled, view.rail, view.specimens
+    fed = np.abs(settled.zener_current[index]) + (np.abs(settled.supply_current) if index == 0 else 0.0)
+    loaded = np.zeros(specimens.count, dtype=bool)
+    commanded = specimens.shape.commanded(view.check.on or ())
+    for number, load in enumerate(specimens.shape.loads):
+        if index in (load.rail, load.returns_to) and load.kind != "led":
+            runs_on = (commanded[number] & (specimens.switch[number] != Switch.OPEN)) | (specimens.switch[number] == Switch.STUCK)
+            loaded |= runs_on & (specimens.load_open[number] == 0.0)
+    return np.asarray((fed < NOTHING_FLOWS) & ~loaded)
 
 
 def _unsolved(settled: Settled, value: Array) -> Array:

@@ -31,7 +31,7 @@ TOLD, SUSPECTS = 3, 3
 """Checks of which it is told what they should show, and the suspects for which."""
 WORTH = 0.005
 """Gains below this are noise [bit]."""
-COUNTS_FROM = 1e-4
+COUNTS_FROM = 1e-8
 """Share of all that is explained from which a hypothesis counts for the gain."""
 LIVE_PENALTY = 0.5
 """Dead before live: share of a live check's gain that counts, so that it comes first only if it tells twice as much a minute."""

@@ -37,6 +37,8 @@ TAILS = ((0.0, 0.02, 0.98, 1.0), (-0.1, 0.0, 1.0, 1.1))
 """A coordinate, and the severity it stands for: two in a hundred faults are a little worse or milder than their range says, by as
 much as a tenth of it. Common practice, no source.
 """
+ESR_BEYOND = 2.5
+"""Times the upper end of the healthy spread that the worst of sound old reservoirs reach; common practice, no source."""
 RULED_OUT = -60.0
 """Logarithm of the weight of specimens that do not count."""
 OF_THE_MAINS = ("mains-low", "mains-high")
@@ -120,7 +122,17 @@ def crowd_of(board: Board) -> Crowd:
 
 
 def _healthy(board: Board, count: int) -> Specimens:
-    return _as_while_reading(population(board, count), board)
+    healthy = _as_while_reading(population(board, count), board)
+    return replace(healthy, esr=_with_tails(healthy))
+
+
+def _with_tails(healthy: Specimens) -> Array:
+    """ESR [ohm], (rails, n): two in a hundred sound reservoirs are a little beyond the healthy spread."""
+    low, high = known.ESR_HEALTHY
+    fitted = healthy.reservoir > 0.0
+    product = np.where(fitted, healthy.esr, 0.0) * healthy.reservoir
+    place = np.log(np.maximum(product, low) / low) / np.log(high / low)
+    return np.asarray(healthy.esr * ESR_BEYOND ** np.interp(place, [0.0, 0.02, 0.98, 1.0], [0.0, 0.0, 0.0, 1.0]))
 
 
 Box = tuple[tuple[float, float], tuple[float, float]]

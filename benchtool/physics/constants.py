@@ -34,8 +34,6 @@ ESR_NOMINAL = 6e-5
 """Reservoir ESR times its capacitance [ohm·F]."""
 ESR_HEALTHY = (1.5e-5, 2e-4)
 """Healthy spread of ESR times capacitance [ohm·F]."""
-ESR_BEYOND = 2.0
-"""Times the ends of the healthy spread that two in a hundred sound parts reach at either end; common practice, no source."""
 ESR_LEAST = 0.02
 """Least ESR of a reservoir [ohm]."""
 REGULATOR_RESISTANCE = 0.2

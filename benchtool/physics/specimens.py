@@ -276,12 +276,8 @@ def _reservoir(rail: Rail, draw: _Drawer) -> Array:
 
 
 def _esr(capacitance: Array, draw: _Drawer, warm: bool) -> Array:
-    """Evenly in the logarithm over what is healthy; two in a hundred parts are a little beyond it at either end."""
     low, high = np.log(known.ESR_HEALTHY)
-    beyond = np.log(known.ESR_BEYOND)
-    even = draw.even(0.0, 1.0)
-    spread = np.exp(np.interp(even, [0.0, 0.02, 0.98, 1.0], [low - beyond, low, high, high + beyond]))
-    spread = spread if warm else draw.constant(known.ESR_NOMINAL)
+    spread = np.exp(draw.even(low, high)) if warm else draw.constant(known.ESR_NOMINAL)
     with np.errstate(divide="ignore"):
         return np.maximum(spread / capacitance, known.ESR_LEAST)
 
