@@ -2,8 +2,8 @@
 
 `python -m tests.bench_diagnosis` prints all tables (minutes). The boards are those of `reference/bench_boards.json`, whose parts
 are spread wider than the product assumes. Each starts from the mains and the first rail's readings, makes the check that is
-proposed first until the first suspect has 90 % after at least one check, or 12 checks are made. What is not decided by then
-counts as wrong.
+proposed first until the first suspect has 90 % after at least one check, or 12 checks are made, or none is left that would
+tell anything. What is not decided by then counts as wrong.
 """
 
 from __future__ import annotations
@@ -165,6 +165,7 @@ def diagnosed(board: Bench, order: Order) -> Iterator[Verdict]:
             return
         following = next((check for check in order(board, found, taken) if _key(check) in board.readings), None)
         if following is None:
+            yield Verdict(board, faults, probability, is_right(faults, board.truth), checks, probability >= DECIDED)
             return
         taken.append(board.readings[_key(following)])
 

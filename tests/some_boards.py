@@ -102,6 +102,7 @@ def forget(monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setattr(posterior, "crowd_of", lru_cache(crowd.crowd_of.__wrapped__))
     monkeypatch.setattr(assessment, "_yardsticks", lru_cache(assessment._yardsticks.__wrapped__))
     monkeypatch.setattr(assessment, "budget_of", budget.budget_of.__wrapped__)
+    monkeypatch.setattr(effective, "_solver", lru_cache(effective._solver.__wrapped__))
     monkeypatch.setattr(closer, "_bench", lru_cache(closer._bench.__wrapped__))
 
 

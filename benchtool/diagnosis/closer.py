@@ -19,11 +19,11 @@ from benchtool.physics.laws import Array
 from benchtool.physics.sequence import SEVERITY, coordinate
 from benchtool.physics.specimens import concatenate
 
-REDRAWN = 512
+REDRAWN = 320
 """Specimens of a hypothesis that is drawn again."""
-POOR = 0.04
+POOR = 0.025
 """Share of its specimens that a hypothesis must be worth, or it is drawn once more, closer still."""
-LOOKED_AT = (8.0, 6.0, 4.0, 4.0)
+LOOKED_AT = (8.0, 5.0, 4.0)
 """Effective number of specimens around which it is drawn, time after time: not the best one alone, for sharp readings leave it to
 chance which of them that is.
 """

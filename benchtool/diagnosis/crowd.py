@@ -106,9 +106,10 @@ class Crowd:
     def prepare(self) -> Iterator[tuple[int, int]]:
         """Settles the states that readings and checks are made in; yields how many are done, of how many."""
         switched = self.board.switched_loads()
-        states = dict.fromkeys([(), switched, *((name,) for name in switched)])
-        for done, state in enumerate(states, start=1):
-            self.bench.settled(state)
+        cold = dict.fromkeys([(), switched, *((name,) for name in switched)])
+        states = [*((state, False) for state in cold), ((), True), (switched, True)]
+        for done, (state, warm) in enumerate(states, start=1):
+            self.bench.settled(state, warm=warm)
             yield done, len(states)
 
 

@@ -9,6 +9,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
+from functools import lru_cache
 
 import numpy as np
 
@@ -17,7 +18,7 @@ from benchtool.catalogue.readings import READING_KINDS
 from benchtool.catalogue.shown import View
 from benchtool.catalogue.shows import LINE_ERROR, RAIL_ERROR, SHOWS
 from benchtool.diagnosis.likelihood import accuracy_of
-from benchtool.diagnosis.nearby import reading_population
+from benchtool.diagnosis.nearby import near_parts, reading_population
 from benchtool.observed import Check, Meter, Reading
 from benchtool.physics.bench import Bench
 from benchtool.physics.budget import (
@@ -69,8 +70,9 @@ class Effective:
 
 def effective_of(board: Board, meter: Meter, readings: Sequence[Reading]) -> Effective:
     """The tightest figure that one of the readings gives, else the best lower bound, else nothing."""
-    solver = _Solver(board, meter, readings)
-    figures = [figure for reading in readings if (figure := solver.figure(reading)) is not None]
+    telling = tuple(reading for reading in readings if near_parts(board, meter, [reading]) or reading.what == "mains-voltage")
+    solver, smooth = _solver(board, meter, telling, DRAWN), not any(_rough(board, reading) for reading in readings)
+    figures = [figure for reading in readings if (figure := solver.figure(reading, smooth=smooth)) is not None]
     if figures:
         return min(figures, key=lambda figure: figure.spread)
     bounds = [bound for reading in readings if (bound := solver.bound(reading)) is not None]
@@ -94,29 +96,48 @@ def _rough(board: Board, reading: Reading) -> bool:
     return volts is not None and reading.what in limits and reading.value > limits[reading.what] * volts
 
 
-class _Solver:
-    """The healthy spread of the board with everything but the dropper, and the board as marked."""
+@lru_cache(maxsize=32)
+def _solver(board: Board, meter: Meter, readings: tuple[Reading, ...], count: int) -> _Solver:
+    return _Solver(board, meter, readings, count)
 
-    def __init__(self, board: Board, meter: Meter, readings: Sequence[Reading]) -> None:
+
+class _Solver:
+    """The healthy spread of the board with everything but the dropper, and the board as marked; `readings` are those that say
+    where the spread lies. What was worked out for a reading is kept.
+    """
+
+    def __init__(self, board: Board, meter: Meter, readings: Sequence[Reading], count: int) -> None:
         self.board, self.meter = board, meter
-        self.spread, _ = reading_population(board, meter, readings, DRAWN)
+        self.spread, _ = reading_population(board, meter, readings, count)
         self.marked = as_marked(board)
         self.bench = Bench(self.spread, crowd=True)
-        self.smooth = not any(_rough(board, reading) for reading in readings)
+        self._kept: dict[tuple[Reading, str], Effective | None] = {}
 
-    def figure(self, reading: Reading) -> Effective | None:
-        """What this reading says outright, or None where it says nothing or only a bound."""
+    def figure(self, reading: Reading, *, smooth: bool) -> Effective | None:
+        """What this reading says outright, or None where it says nothing or only a bound; `smooth`: the first rail is."""
+        key = reading, "smooth" if smooth else "rough"
+        if key not in self._kept:
+            self._kept[key] = self._figure(reading, smooth)
+        return self._kept[key]
+
+    def bound(self, reading: Reading) -> Effective | None:
+        """The least supply that holds the first rail where this reading found it regulating."""
+        key = reading, "bound"
+        if key not in self._kept:
+            self._kept[key] = self._bound(reading)
+        return self._kept[key]
+
+    def _figure(self, reading: Reading, smooth: bool) -> Effective | None:
         if not isinstance(reading.value, float):
             return None
         if reading.what == "rail-voltage" and self._on_first_rail(reading):
-            low = self._band(reading) == "below" and self.smooth
+            low = self._band(reading) == "below" and smooth
             return self._by_rail(reading, reading.value) if low else None
         if reading.what in BY_LINE and self.board.dropper.kind == "capacitor":
             return self._by_line(reading, reading.value)
         return None
 
-    def bound(self, reading: Reading) -> Effective | None:
-        """The least supply that holds the first rail where this reading found it regulating."""
+    def _bound(self, reading: Reading) -> Effective | None:
         if reading.what != "rail-voltage" or not self._on_first_rail(reading):
             return None
         band = self._band(reading)

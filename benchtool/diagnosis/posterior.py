@@ -25,7 +25,7 @@ from benchtool.physics.laws import Array
 
 LEADS_FROM = 0.005
 """Share of all that is explained from which a hypothesis leads."""
-MOST_LEADERS = 8
+MOST_LEADERS = 6
 LIKE_A_MISTAKE = 3.0
 """Natural logarithm by which a mistake must account for a reading better than the first hypothesis does."""
 ENOUGH = 0.15
