@@ -320,7 +320,7 @@ def test_readings_against_a_healthy_band() -> None:
 def test_a_factor_of_two_speaks_for_or_against() -> None:
     reading = Reading(what="mains-voltage", value=230.0)
     rows = [Because(reading, None, Expected(), Expected(), weight) for weight in (0.31, 0.0, -0.31)]
-    assert [says(row) for row in rows] == ["for", "=", "against"]
+    assert [says(row) for row in rows] == ["for", "either", "against"]
 
 
 # The case file that `new` writes

@@ -13,7 +13,7 @@ from typing import Any
 import pytest
 
 from benchtool import assess
-from benchtool.board import UNKNOWN, Bleeder, Board, Reservoir
+from benchtool.board import UNKNOWN, Bleeder, Board, Dropper, Reservoir, Zener
 from benchtool.catalogue.cautions import cautions
 from benchtool.diagnosis.posterior import posterior_of
 from benchtool.diagnosis.safety import Finding, bleeder_read, power_allowed, safety_findings, zener_open_of
@@ -173,7 +173,7 @@ def test_the_cautions_know_the_bleeder_that_was_read() -> None:
 def test_the_discharge_is_told_in_full(ascii: bool) -> None:
     """Resistor, time, range and proving of the meter: the published values, cautions a bench needs (common practice)."""
     told = cautions(BOARD, ascii=ascii)[1]
-    assert f"10 k{'ohm' if ascii else 'Ω'} 5 W, held on for 15 s" in told
+    assert f"10 k{'ohm' if ascii else 'Ω'} 5 W, held on each for 15 s" in told
     for words in ("DC range", "AC range reads a charge as zero", "before and after"):
         assert words in told
 
@@ -299,3 +299,22 @@ def test_every_sentence_is_whole() -> None:
                 assert "{" not in each.sentence(ascii=ascii)
             assert each.sentence(ascii=True).isascii()
             assert 0.0 <= each.probability <= 1.0
+
+
+def test_a_large_reservoir_that_an_open_zener_let_climb_is_held_longer() -> None:
+    # 470 uF + 20 % at twice 358 V (half-wave): 10 kohm · 564 uF · ln(716/5) = 28 s, told in whole 5 s.
+    rails = (replace(BOARD.rails[0], reservoir=Reservoir(capacitance=470e-6), zener=Zener(voltage=12.0), fed_through=None),)
+    pumping = replace(BOARD, rectifier="half-wave", rails=rails, loads=())
+    assert "held on each for 30 s" in cautions(pumping)[1]
+
+
+def test_a_fixed_appliance_is_not_told_to_be_unplugged() -> None:
+    told = cautions(replace(BOARD, connected_by="fixed"))[1]
+    assert "plug" not in told.lower()
+    assert "breaker, lock it off, prove it dead" in told
+    assert "mains terminals must be under 5 V" in told
+
+
+def test_a_resistor_in_the_dropper_s_place_holds_nothing_but_is_hot() -> None:
+    told = cautions(replace(BOARD, dropper=Dropper(kind="resistor", resistance=4.7e3)))[1]
+    assert "discharge every reservoir (the dropper is a resistor and hot: let it cool)" in told

@@ -163,3 +163,27 @@ def test_the_order_of_the_readings_changes_nothing() -> None:
     readings = (LOW_RAIL, read("dropper-capacitance", 182e-9, lifted=True), read("inrush-resistance", 100.0))
     one, other = (posterior_of(CONTRACT.board, METER, order) for order in (readings, readings[::-1]))
     assert one.probabilities.tolist() == other.probabilities.tolist()
+
+
+def test_an_injection_is_a_reading_that_parts_what_feeds_the_rail_from_what_is_behind_it() -> None:
+    # Both boards starve at 10 V with the relay on. Fed 20 mA on the bench, the relay off, one holds its zeners' 23 V: what feeds
+    # it is at fault. On the other the rail stays low: something behind it takes the 20 mA (published values, near-identical
+    # readings).
+    starved = read("rail-voltage", 10.0, rail="relay rail", on=ON)
+    before_the_rail = {"dropper-capacitance-lost", "inrush-high", "diode-short", "dropper-open", "wrong-part", "mains-low"}
+
+    def share(volts: float) -> float:
+        found = posterior_of(CONTRACT.board, METER, (starved, read("rail-injection", volts, rail="relay rail")))
+        names = [hypothesis.name for hypothesis in found.hypotheses]
+        return sum(float(p) for p, name in zip(found.probabilities, names, strict=True) if name in before_the_rail)
+
+    assert share(23.3) > 0.9
+    assert share(5.0) < 0.1
+
+
+def test_safety_findings_stand_apart_and_change_no_probability() -> None:
+    readings = (LOW_RAIL, read("bleeder-resistance", "open"))
+    found, without = assess(replace(CONTRACT, readings=readings)), assess(replace(CONTRACT, readings=readings[:1]))
+    assert "bleeder-open" in {finding.fault for finding in found.safety}
+    assert [suspect.probability for suspect in found.suspects] == [suspect.probability for suspect in without.suspects]
+    assert "bleeder-open" not in {suspect.fault for suspect in found.suspects}

@@ -30,6 +30,8 @@ FLOATS, NOTHING_FLOWS = 10.0, 3e-6
 """One sigma of a rail that nothing feeds and no load is on [V], and the current under which it counts as not fed [A]: what leaks
 past parts that block, and the meter itself, decide there.
 """
+LEAST_DROPPER = 10e-9
+"""Dropper [F] that lets nothing by that could lift a rail."""
 RIPPLE_ERROR, RIPPLE_ERROR_FLOOR = 0.05, 0.01
 LINE_ERROR, LINE_ERROR_FLOOR = 0.01, 1.5e-4
 """Share, and amperes: what leaks past a part that blocks is left out of the physics."""
@@ -63,7 +65,7 @@ def _rail_voltage(view: View) -> Shown:
 
 
 def _floats(view: View) -> Flags:
-    """Where nothing feeds the rail and no load is on it, so that leaks decide at what voltage it stands; (n,)."""
+    """Where a supply that blocks leaves the rail to what leaks, with no load on it, so that leaks decide its voltage; (n,)."""
     settled, index, specimens = view.settled, view.rail, view.specimens
     fed = np.abs(settled.zener_current[index]) + (np.abs(settled.supply_current) if index == 0 else 0.0)
     loaded = np.zeros(specimens.count, dtype=bool)
@@ -72,7 +74,8 @@ def _floats(view: View) -> Flags:
         if index in (load.rail, load.returns_to) and load.kind != "led":
             runs_on = (commanded[number] & (specimens.switch[number] != Switch.OPEN)) | (specimens.switch[number] == Switch.STUCK)
             loaded |= runs_on & (specimens.load_open[number] == 0.0)
-    return np.asarray((fed < NOTHING_FLOWS) & ~loaded)
+    plugged_in = np.isfinite(specimens.series_resistance) & (specimens.capacitance > LEAST_DROPPER)
+    return np.asarray((fed < NOTHING_FLOWS) & ~loaded & plugged_in)
 
 
 def _unsolved(settled: Settled, value: Array) -> Array:

@@ -16,6 +16,8 @@ from benchtool.physics.laws import Array
 
 CLEARLY = 2.0
 """Natural logarithm by which a mistake must account for the pair better than the best single fault."""
+LEADING = 0.1
+"""Probability from which a pair of faults reconciles readings too."""
 RATHER = 1.5
 """Natural logarithm from which one of two readings is called the likelier mistake."""
 
@@ -34,14 +36,15 @@ class Disagreement:
 
 
 def disagreements(posterior: Posterior) -> tuple[Disagreement, ...]:
-    """Every pair of readings that no single fault reconciles."""
+    """Every pair of readings that no single fault reconciles, nor two faults that lead."""
     return tuple(_found(posterior)) if len(posterior.readings) > 1 else ()
 
 
 def _found(posterior: Posterior) -> Iterator[Disagreement]:
     uniform, readings, alone = posterior.uniform, posterior.readings, posterior.alone()
     singles = [index for index, hypothesis in enumerate(posterior.hypotheses) if len(hypothesis.faults) < 2]
-    together = _together(posterior, singles)
+    leading = [index for index, probability in enumerate(posterior.probabilities) if probability > LEADING]
+    together = _together(posterior, sorted({*singles, *leading}))
     best = alone[:, singles].max(axis=1)
     for first, second in combinations(range(len(readings)), 2):
         possible = best[first] > uniform[first] and best[second] > uniform[second]
@@ -66,12 +69,12 @@ def _log_without(posterior: Posterior, row: int) -> float:
     return float(log_sum(log_sum(rest) + weights))
 
 
-def _together(posterior: Posterior, singles: list[int]) -> Array:
-    """Logarithm of the likelihood of every two readings together under the single fault that reconciles them best,
+def _together(posterior: Posterior, rows: list[int]) -> Array:
+    """Logarithm of the likelihood of every two readings together under that of the hypotheses `rows` that reconciles them best,
     (readings, readings): between the specimens drawn first, or those drawn closer, where two sharp readings may meet.
     """
-    found = [_log_pairs(posterior.densities[:, index], posterior.log_prior[index]) for index in singles]
-    found += [_log_pairs(posterior.closer[i].densities, posterior.closer[i].log_prior) for i in singles if i in posterior.closer]
+    found = [_log_pairs(posterior.densities[:, index], posterior.log_prior[index]) for index in rows]
+    found += [_log_pairs(posterior.closer[i].densities, posterior.closer[i].log_prior) for i in rows if i in posterior.closer]
     return np.asarray(np.max(found, axis=0))
 
 

@@ -28,7 +28,7 @@ SENTENCES = {
     "bleeder-low": "The bleeder is low: it runs hot and loads the dropper. Replace it with its marked value.",
     "no-bleeder": "No bleeder is stated: {stored_V} may stay in the dropper for hours. Discharge by hand and measure.",
     "slow-discharge": "The plug pins fall to {limit_V} only after {seconds} by this supply alone; the limit is {limit_s} "
-    "(IEC 60335-1 22.5), and then they still hold {left_V}. Discharge by hand and measure.",
+    "(IEC 60335-1 22.5), when they still hold {left_V}. Discharge by hand and measure.",
     "bleeder-overvoltage": "Each resistor of the bleeder string stands {each_V} against a rating of {rated_V}: it may fail open.",
     "no-safety-class": "The dropper has no safety class: across or in the mains it must have one (IEC 60384-14).",
     "dropper-overvoltage": "The dropper is rated {rated_V} AC and may see {highest_V}.",

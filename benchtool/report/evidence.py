@@ -29,10 +29,14 @@ SMOOTH = 1e-3
 """Ripple under which no figure is given: meters show none [V]."""
 LITTLE = 0.1
 """Information under which a check tells next to nothing [bit]."""
+SETTLED = 0.95
+"""Probability of the first suspect from which such a check only confirms it."""
+POINTS_FROM = 0.6
+"""Probability from which an outcome is said to point to a suspect."""
 
 CONDITIONS = {
-    "dead": "Unplug, discharge and measure before it.",
-    "live": "Only through an isolating transformer; clip on with the power off, one hand; unplug and discharge after it.",
+    "dead": "Disconnect the mains, discharge and measure before it.",
+    "live": "Only through an isolating transformer; clip on with the power off, one hand; disconnect and discharge after it.",
 }
 
 
@@ -111,14 +115,14 @@ def _told(rows: Sequence[Because], words: Words, page: Page, *, compare: bool) -
         yield from paragraph(page, "; ".join(parts) + (f": {verdict}" if verdict else ""), first="   ")
 
 
-SAID = {"for": "speaks for it", "against": "speaks against it", "=": "says nothing"}
+SAID = {"for": "speaks for it", "against": "speaks against it", "either": "goes with either"}
 """The marks of the table, where there is room for words only."""
 
 
 def says(row: Because) -> str:
     """Whether the reading speaks for the suspect, against it, or neither."""
     if abs(row.weight) < TELLS_FROM:
-        return "="
+        return "either"
     return "for" if row.weight > 0.0 else "against"
 
 
@@ -138,40 +142,49 @@ def next_lines(
     text = f"{_costs(first, words)}. {CONDITIONS[first.condition]} {tells(first, suspects)}"
     lines = paragraph(page, text, first="NEXT  ")
     lines.extend(paragraph(page, f'--reading "{typed(first.check)}"', first="type  "))
-    lines.extend(paragraph(page, _foretold(first), first="shows "))
-    if len(first.turns) > 1:
-        lines.extend(paragraph(page, _decides(first), first="means "))
+    lines.extend(_foretold(first, page))
+    lines.extend(_decides(first, page))
     for number, check in enumerate(others):
         lines.extend(paragraph(page, f"{_costs(check, words)}.", first="then  " if number == 0 else "      "))
     return lines
 
 
-def _foretold(item: NextCheck) -> str:
-    """What the check should show, healthy and with the first suspects; those of which it shows the same together."""
-    labels: dict[str, list[str]] = {}
+def _foretold(item: NextCheck, page: Page) -> list[Line]:
+    """What the check should show, healthy and with the first suspects, a line a range."""
+    who: dict[str, list[str]] = {}
     for each in item.foretold:
         label = each.hypothesis.label if each.hypothesis.faults else "healthy"
-        labels.setdefault(expectation(each.expected, item.check.what), []).append(label)
-    return "; ".join(f"{', or '.join(who)}: {shown}" for shown, who in labels.items())
+        who.setdefault(expectation(each.expected, item.check.what), []).append(label)
+    lines: list[Line] = []
+    for number, (shown, labels) in enumerate(who.items()):
+        first = "shows " if number == 0 else "      "
+        lines.extend(paragraph(page, f"{shown}  if {'; or '.join(labels)}", first=first, rest="        "))
+    return lines
 
 
-def _decides(item: NextCheck) -> str:
-    """What would be decided by what is read."""
-    return "; ".join(
-        f"{outcome(turn, item.check.what)}: {turn.hypothesis.label} ({percent(turn.probability)})" for turn in item.turns
-    )
+def _decides(item: NextCheck, page: Page) -> list[Line]:
+    """What would be decided by what is read, a line an outcome."""
+    lines: list[Line] = []
+    for number, turn in enumerate(item.turns if len(item.turns) > 1 else ()):
+        points = f"points to {turn.hypothesis.label}" if turn.probability >= POINTS_FROM else "does not decide it"
+        first = "means " if number == 0 else "      "
+        lines.extend(paragraph(page, f"{outcome(turn, item.check.what)}  {points}", first=first, rest="        "))
+    return lines
 
 
 def turning_lines(suspect: Suspect, checks: Sequence[NextCheck], words: Words, page: Page) -> list[Line]:
     """What would change the verdict: of the first checks, the outcome that would most likely put another suspect first."""
     turns = [
-        (turn, item) for item in checks for turn in item.turns if turn.hypothesis is not suspect.hypothesis
+        (turn, item)
+        for item in checks
+        for turn in item.turns
+        if turn.hypothesis is not suspect.hypothesis and turn.probability >= POINTS_FROM and len(item.turns) > 1
     ]
     if suspect.hypothesis is None or not turns:
         return []
     turn, item = max(turns, key=lambda each: each[0].chance)
     reads = f"{words.check(item.check)} {outcome(turn, item.check.what)}"
-    return paragraph(page, f"{reads} would make it {turn.hypothesis.label} ({percent(turn.probability)}).", first="BUT  ")
+    return paragraph(page, f"{reads} would point to {turn.hypothesis.label}.", first="BUT  ")
 
 
 def _with_a_dead_one(checks: Sequence[NextCheck]) -> list[NextCheck]:
@@ -188,7 +201,8 @@ def _costs(item: NextCheck, words: Words) -> str:
 def tells(item: NextCheck, suspects: Sequence[Suspect]) -> str:
     """How much of what is still open the check is expected to settle."""
     if item.gain < LITTLE:
-        return "It tells little that is not known already."
+        stands = bool(suspects) and suspects[0].probability >= SETTLED
+        return "The verdict stands without it: it would only confirm it." if stands else "It tells little that is not known."
     open_still = [suspect.probability for suspect in suspects if suspect.probability > 0.0]
     doubt = -sum(probability * math.log2(probability) for probability in open_still)
     share = min(item.gain / doubt, 0.99) if doubt > 0.0 else 0.0
