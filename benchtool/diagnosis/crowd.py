@@ -37,7 +37,7 @@ TAILS = ((0.0, 0.02, 0.98, 1.0), (-0.1, 0.0, 1.0, 1.1))
 """A coordinate, and the severity it stands for: two in a hundred faults are a little worse or milder than their range says, by as
 much as a tenth of it. Common practice, no source.
 """
-ESR_BEYOND = 2.5
+ESR_BEYOND = 3.0
 """Times the upper end of the healthy spread that the worst of sound old reservoirs reach; common practice, no source."""
 RULED_OUT = -60.0
 """Logarithm of the weight of specimens that do not count."""
@@ -128,12 +128,12 @@ def _healthy(board: Board, count: int) -> Specimens:
 
 
 def _with_tails(healthy: Specimens) -> Array:
-    """ESR [ohm], (rails, n): two in a hundred sound reservoirs are a little beyond the healthy spread."""
+    """ESR [ohm], (rails, n): six in a hundred sound reservoirs are beyond the healthy spread."""
     low, high = known.ESR_HEALTHY
     fitted = healthy.reservoir > 0.0
     product = np.where(fitted, healthy.esr, 0.0) * healthy.reservoir
     place = np.log(np.maximum(product, low) / low) / np.log(high / low)
-    return np.asarray(healthy.esr * ESR_BEYOND ** np.interp(place, [0.0, 0.02, 0.98, 1.0], [0.0, 0.0, 0.0, 1.0]))
+    return np.asarray(healthy.esr * ESR_BEYOND ** np.interp(place, [0.0, 0.94, 1.0], [0.0, 0.0, 1.0]))
 
 
 Box = tuple[tuple[float, float], tuple[float, float]]
