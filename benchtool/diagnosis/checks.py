@@ -27,6 +27,8 @@ from benchtool.physics.laws import Flags
 FIRST_LIVE_MINUTES = 5.0
 FIRST_DEAD_MINUTES = 2.0
 """Extra minutes for the first live check, and for the first dead one after a live one; common practice, no source."""
+MOST_ROWS = 48
+"""Hypotheses that count for the gain at most, the most probable first."""
 TOLD, SUSPECTS = 3, 3
 """Checks of which it is told what they should show, and the suspects for which."""
 WORTH = 0.005
@@ -167,6 +169,7 @@ class _Weigher:
     def __init__(self, posterior: Posterior) -> None:
         self._posterior = posterior
         self.rows = posterior.explained > COUNTS_FROM
+        self.rows[np.argsort(-posterior.explained, kind="stable")[MOST_ROWS:]] = False
         self._shares = posterior.explained[self.rows, None] * posterior.shares()[self.rows]
         self._where = np.tile(self.rows[:, None], (1, posterior.crowd.each))
 

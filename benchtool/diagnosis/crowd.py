@@ -25,8 +25,8 @@ from benchtool.physics.laws import Array, Flags
 from benchtool.physics.sequence import OTHER_SEVERITY, SECOND_SEVERITY, SEVERITY, coordinate
 from benchtool.physics.specimens import Specimens, concatenate, population
 
-EACH = 256
-"""Specimens a hypothesis."""
+EACH, IN_ALL, LEAST_EACH = 256, 16384, 32
+"""Specimens a hypothesis; in all, so that a board of forty loads is no hundred times slower; and at least."""
 BOARDS_KEPT = 8
 """Boards whose crowds are kept."""
 USUAL_SHARE = 0.7
@@ -117,7 +117,8 @@ class Crowd:
 @lru_cache(maxsize=BOARDS_KEPT)
 def crowd_of(board: Board) -> Crowd:
     """The crowd of `board`, made once."""
-    hypotheses, healthy = hypotheses_of(board), _healthy(board, EACH)
+    hypotheses = hypotheses_of(board)
+    healthy = _healthy(board, min(EACH, max(IN_ALL // len(hypotheses), LEAST_EACH)))
     bench = Bench(concatenate([struck(board, hypothesis, healthy) for hypothesis in hypotheses]), crowd=True)
     return Crowd(board, hypotheses, bench)
 
