@@ -227,7 +227,8 @@ def report(draw: str, limit: int | None = None, *, books: bool = True) -> None:
     print("\n".join(calibration(every)))
     print("first suspects between 20 and 90 % alone")
     print("\n".join(calibration([v for v in every if 0.2 <= v.probability < 0.9])))
-    print(f"with every reading given: first {all_read(chosen)[0]:.1%}, among the first three {all_read(chosen)[1]:.1%}")
+    top, three = all_read(chosen)
+    print(f"with every reading given: first {top:.1%}, among the first three {three:.1%}")
     if books:
         by_book = [list(diagnosed(board, textbook))[-1] for board in chosen]
         ours, theirs = (np.mean([v.checks for v in found]) for found in ([steps[-1] for steps in followed], by_book))
