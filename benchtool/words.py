@@ -11,9 +11,9 @@ from dataclasses import dataclass
 
 from benchtool.board import Board
 from benchtool.catalogue.readings import READING_KINDS, ReadingKind
-from benchtool.diagnosis.checks import Decides
 from benchtool.diagnosis.disagreement import Disagreement
 from benchtool.diagnosis.evidence import Expected
+from benchtool.diagnosis.outcomes import Decides
 from benchtool.observed import Check, Reading
 from benchtool.quantities import exact, show, show_range
 

@@ -19,7 +19,7 @@ from benchtool.catalogue.shown import Shown
 from benchtool.catalogue.shows import SHOWS
 from benchtool.diagnosis.evidence import Expected, expected
 from benchtool.diagnosis.hypotheses import Hypothesis
-from benchtool.diagnosis.outcomes import Outcomes, outcomes_of, turns_of
+from benchtool.diagnosis.outcomes import Decides, Outcomes, decided_by, outcomes_of
 from benchtool.diagnosis.posterior import ELSEWHERE, Posterior
 from benchtool.observed import Check
 from benchtool.physics.laws import Flags
@@ -62,23 +62,16 @@ class Foretold:
     expected: Expected
 
 
-@dataclass(frozen=True, slots=True)
-class Decides:
-    """A word, or numbers from `low` to `high` [the check's unit], that would put a hypothesis first: with what `chance` that is
-    read, and the `probability` the hypothesis then has.
+def candidates(board: Board, taken: Sequence[Check], disagreeing: Sequence[Check] = ()) -> Iterator[Check]:
+    """Every check this board allows that has not been made, states first off, then on.
+
+    `disagreeing` ones come back, ahead of all, where they can be made in a better condition.
     """
-
-    hypothesis: Hypothesis
-    word: str | None
-    low: float | None
-    high: float | None
-    chance: float
-    probability: float
-
-
-def candidates(board: Board, taken: Sequence[Check]) -> Iterator[Check]:
-    """Every check this board allows that has not been made, states first off, then on."""
     done = {_same(check) for check in taken}
+    for check in disagreeing:
+        again = taken_better(check, board)
+        if again is not None and _same(again) not in done:
+            yield again
     for kind in READINGS:
         if kind.name in SHOWS and kind.name not in ELSEWHERE:
             for check in _places(kind, board):
@@ -139,27 +132,27 @@ def next_checks(
     weigher = _Weigher(posterior)
     last = READING_KINDS[taken[-1].what].condition if taken else None
     found = []
-    done = {_same(check) for check in taken}
-    better = [again for check in disagreeing if (again := taken_better(check, posterior.board)) and _same(again) not in done]
-    for check in dict.fromkeys([*better, *candidates(posterior.board, taken)]):
+    for check in dict.fromkeys(candidates(posterior.board, taken, disagreeing)):
         condition = READING_KINDS[check.what].condition
         if condition == "live" and not power_allowed:
             continue
         outcomes = weigher.outcomes(check)
         use = outcomes.gain_if_doubted()
         if use > WORTH:
-            found.append((use, NextCheck(check, condition, outcomes.gain(), minutes_of(check, last))))
-    ordered = [item for _, item in sorted(found, key=_usefulness, reverse=True)]
-    return (*(weigher.told(item) for item in ordered[:TOLD]), *ordered[TOLD:])
+            found.append((use, NextCheck(check, condition, outcomes.gain(), minutes_of(check, last)), outcomes))
+    ordered = sorted(found, key=_usefulness, reverse=True)
+    first = [weigher.told(item, outcomes) for _, item, outcomes in ordered[:TOLD]]
+    return (*first, *(item for _, item, _ in ordered[TOLD:]))
 
 
 def in_full(posterior: Posterior, item: NextCheck) -> NextCheck:
     """`item` with what it should show, healthy and with the first suspects, and what would be decided by it."""
-    return _Weigher(posterior).told(item)
+    weigher = _Weigher(posterior)
+    return weigher.told(item, weigher.outcomes(item.check))
 
 
-def _usefulness(item: tuple[float, NextCheck]) -> float:
-    use, check = item
+def _usefulness(item: tuple[float, NextCheck, Outcomes]) -> float:
+    use, check, _ = item
     return use * (LIVE_PENALTY if check.condition == "live" else 1.0) / check.minutes
 
 
@@ -179,19 +172,17 @@ class _Weigher:
         shown = _of_rows(crowd.shown(check, meter, self._where), self._where.ravel())
         return outcomes_of(shown, self._shares, READING_KINDS[check.what], meter)
 
-
-    def told(self, item: NextCheck) -> NextCheck:
-        """`item` with what it should show and what would be decided by it."""
+    def told(self, item: NextCheck, outcomes: Outcomes) -> NextCheck:
+        """`item` with what it should show and what would be decided by its `outcomes`."""
         found, hypotheses = self._posterior, self._posterior.hypotheses
-        counted = np.flatnonzero(self.rows)
         suspects = [int(row) for row in np.argsort(-found.explained, kind="stable")[:SUSPECTS] if self.rows[row]]
         shown = list(dict.fromkeys([found.crowd.sound, *suspects]))
         ranges = expected(found, item.check, shown)
-        turns = [
-            Decides(hypotheses[counted[turn.row]], turn.word, turn.low, turn.high, turn.chance, turn.probability)
-            for turn in turns_of(self.outcomes(item.check))
-        ]
-        return replace(item, foretold=tuple(Foretold(hypotheses[row], ranges[row]) for row in shown), turns=tuple(turns))
+        return replace(
+            item,
+            foretold=tuple(Foretold(hypotheses[row], ranges[row]) for row in shown),
+            turns=decided_by(outcomes, [hypotheses[row] for row in np.flatnonzero(self.rows)]),
+        )
 
 
 def _of_rows(shown: Shown, where: Flags) -> Shown:

@@ -73,6 +73,11 @@ class Crowd:
         """Which hypothesis is the sound board."""
         return next(index for index, hypothesis in enumerate(self.hypotheses) if not hypothesis.faults)
 
+    @cached_property
+    def log_weights(self) -> Array:
+        """Logarithm of the hypotheses' weights, (hypotheses,)."""
+        return np.log([hypothesis.weight for hypothesis in self.hypotheses])
+
     def shown(self, check: Check, meter: Meter, where: Flags | None = None) -> Shown:
         """What `check` shows on the specimens, flat; only those at `where` (hypotheses, each) count."""
         return SHOWS[check.what](View(self.bench, self.board, check, meter, None if where is None else where.ravel()))

@@ -49,7 +49,7 @@ def _found(posterior: Posterior) -> Iterator[Disagreement]:
     for first, second in combinations(range(len(readings)), 2):
         possible = best[first] > uniform[first] and best[second] > uniform[second]
         if possible and together[first, second] < uniform[first] + uniform[second] - CLEARLY:
-            likeliest = max(singles, key=lambda index: np.log(posterior.hypotheses[index].weight) + alone[first, index])
+            likeliest = max(singles, key=lambda index: posterior.crowd.log_weights[index] + alone[first, index])
             implied, doubtful = _implied(posterior, likeliest, first, second), _doubtful(posterior, first, second)
             yield Disagreement(readings[first], readings[second], implied, doubtful)
 
@@ -65,8 +65,7 @@ def _doubtful(posterior: Posterior, first: int, second: int) -> Reading | None:
 def _log_without(posterior: Posterior, row: int) -> float:
     """Logarithm of the likelihood of all readings but one, the hypotheses weighed by their priors."""
     rest = np.delete(posterior.densities, row, axis=0).sum(axis=0) + posterior.log_prior
-    weights = np.log([hypothesis.weight for hypothesis in posterior.hypotheses])
-    return float(log_sum(log_sum(rest) + weights))
+    return float(log_sum(log_sum(rest) + posterior.crowd.log_weights))
 
 
 def _together(posterior: Posterior, rows: list[int]) -> Array:

@@ -5,6 +5,7 @@ Words are outcomes as they are; numbers are sorted into classes as wide as the m
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from itertools import pairwise
 
@@ -12,6 +13,7 @@ import numpy as np
 
 from benchtool.catalogue.readings import ReadingKind
 from benchtool.catalogue.shown import Shown
+from benchtool.diagnosis.hypotheses import Hypothesis
 from benchtool.diagnosis.likelihood import LOGARITHMIC, SMALLEST, spread, word_chance
 from benchtool.observed import Meter
 from benchtool.physics.laws import Array, Flags
@@ -49,12 +51,12 @@ class Outcomes:
 
 
 @dataclass(frozen=True, slots=True)
-class Turn:
-    """Outcomes that leave the same hypothesis (by its row) in the lead: a word, or numbers from `low` to `high` [unit], None for
-    an end that is open. `chance` of it, and the `probability` that the hypothesis would then have.
+class Decides:
+    """Outcomes that leave one hypothesis in the lead: a word, or numbers from `low` to `high` [the check's unit], None for an end
+    that is open; with the `chance` that they are read, and the `probability` that the hypothesis then has.
     """
 
-    row: int
+    hypothesis: Hypothesis
     word: str | None
     low: float | None
     high: float | None
@@ -62,24 +64,26 @@ class Turn:
     probability: float
 
 
-def turns_of(outcomes: Outcomes) -> list[Turn]:
-    """What would be decided by what is read: for each word, and each run of classes with one hypothesis in the lead."""
+def decided_by(outcomes: Outcomes, hypotheses: Sequence[Hypothesis]) -> tuple[Decides, ...]:
+    """What would be decided by what is read: for each word, and each run of classes with one of `hypotheses`, the rows, in the
+    lead.
+    """
     table, words = outcomes.table / outcomes.table.sum(), len(outcomes.words)
-    found = [_turn(table[:, [column]], word, None, None) for column, word in enumerate(outcomes.words)]
+
+    def decides(columns: Array, word: str | None, low: float | None = None, high: float | None = None) -> Decides:
+        shares, chance = columns.sum(axis=1), float(columns.sum())
+        row = int(shares.argmax())
+        return Decides(hypotheses[row], word, low, high, chance, float(shares[row]) / chance if chance > 0.0 else 0.0)
+
+    found = [decides(table[:, [column]], word) for column, word in enumerate(outcomes.words)]
     numbers = table[:, words:]
     leads, last = numbers.argmax(axis=0), numbers.shape[1]
     starts = [column for column in range(last) if column == 0 or leads[column] != leads[column - 1]]
     for start, end in pairwise([*starts, last]):
         low = None if start == 0 else float(outcomes.edges[start])
         high = None if end == last else float(outcomes.edges[end])
-        found.append(_turn(numbers[:, start:end], None, low, high))
-    return [turn for turn in found if turn.chance > HARDLY_EVER]
-
-
-def _turn(columns: Array, word: str | None, low: float | None, high: float | None) -> Turn:
-    shares, chance = columns.sum(axis=1), float(columns.sum())
-    row = int(shares.argmax())
-    return Turn(row, word, low, high, chance, float(shares[row]) / chance if chance > 0.0 else 0.0)
+        found.append(decides(numbers[:, start:end], None, low, high))
+    return tuple(each for each in found if each.chance > HARDLY_EVER)
 
 
 def _information(table: Array) -> float:

@@ -104,7 +104,7 @@ def posterior_of(board: Board, meter: Meter, readings: Sequence[Reading]) -> Pos
     """
     taken, crowd = usable(board, readings), crowd_of(board)
     found = _weighed(crowd, meter, taken)
-    logs = found.log_likelihood + np.log([hypothesis.weight for hypothesis in crowd.hypotheses])
+    logs = found.log_likelihood + crowd.log_weights
     alone, best = found.alone(), int(np.argmax(logs))
     if not (alone[:, best] < found.uniform - LIKE_A_MISTAKE).any():
         return found
@@ -117,7 +117,7 @@ def _weighed(crowd: Crowd, meter: Meter, taken: tuple[Reading, ...]) -> Posterio
     densities = np.array([crowd.densities(reading, meter) for reading in taken]).reshape(len(taken), *crowd.shape)
     log_prior = crowd.log_prior(mains_read=mains_read(taken) is not None)
     joint = densities.sum(axis=0) + log_prior
-    logs, weights = log_sum(joint), np.log([hypothesis.weight for hypothesis in crowd.hypotheses])
+    logs, weights = log_sum(joint), crowd.log_weights
     closer = drawn_closer(crowd, meter, taken, joint, _leaders(densities, log_prior, logs, weights))
     for index, item in closer.items():
         logs[index] = log_sum(item.joint)

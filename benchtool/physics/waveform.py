@@ -2,7 +2,7 @@
 
 Cycles are stepped from the means until they repeat. What a rail still drifts by in a cycle is charge that its loads and zeners
 would take many cycles to settle, so the rail is moved by where that charge will lead, by the slopes of the means; two or three
-cycles do for most. Those that do not repeat within `MOST_CYCLES` are said not to have converged.
+cycles do for most. Those that do not repeat within the most cycles are said not to have converged.
 """
 
 from __future__ import annotations
@@ -62,8 +62,10 @@ def settle(specimens: Specimens, on: tuple[str, ...], *, warm: bool = False, eff
     for index in _alike(specimens):
         part = _settle_alike(start.network.part(index), start.rails[:, index], effort.coarse, effort)
         figures.take_over(index, part)
+        if effort.fine is None:
+            continue
         fine = np.flatnonzero(part.needs_fine_steps())
-        if fine.size and effort.fine is not None:
+        if fine.size:
             again = index[fine]
             rails = part.rails["mean"][:, fine]
             figures.take_over(again, _settle_alike(start.network.part(again), rails, effort.fine, effort))
