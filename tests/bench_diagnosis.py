@@ -30,7 +30,7 @@ from benchtool.diagnosis.crowd import crowd_of
 from benchtool.diagnosis.posterior import Posterior, posterior_of
 from benchtool.diagnosis.safety import power_allowed, safety_findings, zener_open_of
 from benchtool.observed import Check, Reading
-from tests.bench_physics import CIRCUIT, LOOSEST
+from tests.bench_physics import CIRCUIT, LOOSEST, seconds
 from tests.reference.simulate import simulate
 
 STORED: dict[str, Any] = json.loads((Path(__file__).parent / "reference" / "bench_boards.json").read_text(encoding="utf-8"))
@@ -241,10 +241,10 @@ def test_a_warm_assessment_costs_less_than_one_circuit_by_the_integrator() -> No
     board = boards()[0]
     case = replace(board.case, readings=tuple(board.first))
     assess(case)
-    one = min(_seconds(lambda: simulate(CIRCUIT, LOOSEST)) for _ in range(2))
-    again, more = _seconds(lambda: assess(case)), replace(case, readings=(*case.readings, _static(board)))
-    another = _seconds(lambda: assess(more))
-    weighed = _seconds(lambda: posterior_of(case.board, case.meter, more.readings))
+    one = min(seconds(lambda: simulate(CIRCUIT, LOOSEST)) for _ in range(2))
+    again, more = seconds(lambda: assess(case)), replace(case, readings=(*case.readings, _static(board)))
+    another = seconds(lambda: assess(more))
+    weighed = seconds(lambda: posterior_of(case.board, case.meter, more.readings))
     print(f"\none circuit {one * 1e3:.0f} ms; assessed again {again * 1e3:.0f} ms, with another reading {another * 1e3:.0f} ms")
     print(f"weighed anew {weighed * 1e3:.1f} ms")
     assert another < one
@@ -253,12 +253,6 @@ def test_a_warm_assessment_costs_less_than_one_circuit_by_the_integrator() -> No
 def _static(board: Bench) -> Reading:
     """A reading that asks for no state of its own."""
     return next(reading for reading in board.readings.values() if reading.what == "inrush-resistance")
-
-
-def _seconds(work: Callable[[], object]) -> float:
-    begun = time.perf_counter()
-    work()
-    return time.perf_counter() - begun
 
 
 def test_most_of_a_few_boards_are_diagnosed_in_few_checks() -> None:

@@ -12,7 +12,6 @@ from __future__ import annotations
 import copy
 import json
 import math
-import re
 import tomllib
 from collections.abc import Callable
 from pathlib import Path
@@ -28,6 +27,7 @@ from tests.reference.circuit import (
     loads_drawing,
     nominal_voltage,
 )
+from tests.reference.quantities import PREFIXES, to_si
 from tests.reference.sample_boards import BOARDS
 from tests.reference.sample_stories import STORIES
 from tests.reference.simulate import Figures, simulate
@@ -35,8 +35,6 @@ from tests.reference.simulate import Figures, simulate
 CASES = Path(__file__).parents[1] / "sample-cases"
 TRUTH = Path(__file__).parent / "reference" / "sample_truth.json"
 SEED = 4077
-PREFIXES = {"p": 1e-12, "n": 1e-9, "u": 1e-6, "m": 1e-3, "": 1.0, "k": 1e3, "M": 1e6}
-QUANTITY = re.compile(r"([\d.]+) (?:([pnumkM]?)(V|Hz|F|ohm|A|W)|(%))")
 METERS = {  # what: unit, share, floor; a two-sigma limit (case format, section 1, [meter])
     "mains-voltage": ("V", 0.01, 0.3), "dropper-voltage": ("V", 0.01, 0.3),
     "rail-voltage": ("V", 0.005, 0.02),
@@ -54,19 +52,6 @@ WARMTH = ((3.3, -6e-4), (5.1, 0.0), (6.2, 3e-4), (12.0, 7e-4), (18.0, 8.5e-4), (
 
 
 # ---- the true board ------------------------------------------------------------------------------
-
-
-def to_si(value: Any) -> Any:
-    """Return a table of the case file with its quantities as SI floats, other words as they are."""
-    match value:
-        case dict():
-            return {key: to_si(part) for key, part in value.items()}
-        case list():
-            return [to_si(part) for part in value]
-        case str() if found := QUANTITY.fullmatch(value):
-            number, prefix, _, percent = found.groups()
-            return float(number) * (0.01 if percent else PREFIXES[prefix or ""])
-    return value
 
 
 def reveal(circuit: Circuit, hidden: dict[str, float]) -> None:

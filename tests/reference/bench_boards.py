@@ -9,16 +9,14 @@ from __future__ import annotations
 
 import itertools
 import json
-import re
 from typing import Any
 
 from tests.reference.parts import COMMON, Circuit, by_name
+from tests.reference.quantities import to_si
 
 Design = dict[str, Any]
 Fault = dict[str, Any]
 Place = Fault  # a fault with its rail or load, no severity yet; a pair has `with`
-PREFIXES = {"p": 1e-12, "n": 1e-9, "u": 1e-6, "m": 1e-3, "": 1.0, "k": 1e3, "M": 1e6}
-QUANTITY = re.compile(r"([\d.]+) (?:([pnumkM]?)(V|Hz|F|ohm|A|W|s)|(%))")
 
 
 # ---- how a design is written ---------------------------------------------------------------------
@@ -233,19 +231,6 @@ def circuit_of(design: Design) -> Circuit:
         if "power" in load:
             load["resistance"] = load["nominal_voltage"] ** 2 / load["power"]
     return circuit
-
-
-def to_si(value: Any) -> Any:
-    """Return a table of the case file with its quantities as SI floats, other words as they are."""
-    match value:
-        case dict():
-            return {key: to_si(part) for key, part in value.items()}
-        case list():
-            return [to_si(part) for part in value]
-        case str() if found := QUANTITY.fullmatch(value):
-            number, prefix, _, percent = found.groups()
-            return float(number) * (0.01 if percent else PREFIXES[prefix or ""])
-    return value
 
 
 def switched(design: Design) -> list[str]:

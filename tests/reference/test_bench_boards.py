@@ -16,8 +16,9 @@ from benchtool.board import Board
 from benchtool.casefile import loads
 from benchtool.casefile.readings import read_reading
 from benchtool.casefile.schema import Findings, Place
-from tests.reference.bench_boards import DESIGNS, case_text, states, to_si
+from tests.reference.bench_boards import DESIGNS, case_text, states
 from tests.reference.bench_make import BOARDS, draw, plan
+from tests.reference.quantities import to_si
 
 BENCH: dict[str, Any] = json.loads(BOARDS.read_text(encoding="utf-8"))
 ROWS: list[dict[str, Any]] = BENCH["boards"]
